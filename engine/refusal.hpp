@@ -48,8 +48,8 @@ struct Place {
 };
 
 struct Refusal : std::exception {
-  Refusal(Code code, std::string text, std::vector<Place> places = {}, std::string hint = {})
-      : code(code), text(std::move(text)), places(std::move(places)), hint(std::move(hint)) {}
+  Refusal(Code why, std::string said, std::vector<Place> where = {}, std::string remedy = {})
+      : code(why), text(std::move(said)), places(std::move(where)), hint(std::move(remedy)) {}
   const char* what() const noexcept override { return text.c_str(); }
 
   Code code;
