@@ -29,7 +29,7 @@ else
   say "Installing what is missing"
   sh tests/install.sh build
   say "Building $engine (a minute or two the first time)"
-  cmake --preset release --log-level=WARNING
+  cmake --preset release >/dev/null
   cmake --build --preset release --target countsel -- --quiet
 fi
 

@@ -1,5 +1,5 @@
 #!/bin/sh
-# tests/install.sh -- installs the Debian packages that are missing, and nothing when none is.
+# tests/install.sh -- installs the Debian packages that are missing.
 #
 # sh tests/install.sh build    what the engine is built from (samples/run.sh)
 # sh tests/install.sh test     that, and what the tests compare with (tests/run.sh)
@@ -33,7 +33,10 @@ for package in $wanted; do
     *) missing="$missing $package" ;;
   esac
 done
-[ -n "$missing" ] || exit 0
+if [ -z "$missing" ]; then
+  echo "Nothing is missing."
+  exit 0
+fi
 
 if [ "$(id -u)" -eq 0 ]; then
   as_root=
@@ -46,4 +49,4 @@ fi
 echo "Installing:$missing"
 $as_root apt-get -qq update || echo "The package lists could not be renewed; trying with those at hand." >&2
 # shellcheck disable=SC2086
-$as_root env DEBIAN_FRONTEND=noninteractive apt-get -qq -y --no-install-recommends install $missing
+$as_root env DEBIAN_FRONTEND=noninteractive apt-get -qq -y --no-install-recommends install $missing >/dev/null

@@ -20,7 +20,7 @@ step() { printf '\n== %s\n' "$*"; }
 # Configures and builds a preset of CMakePresets.json; ninja speaks only of what goes wrong.
 build() {
   step "build $1"
-  cmake --preset "$1" --log-level=WARNING
+  cmake --preset "$1" >/dev/null
   cmake --build --preset "$1" -- --quiet
 }
 
