@@ -2,9 +2,12 @@
 //
 // Every probability is offered as both tails, so that a small one is never made by subtraction from
 // one. One policy: double without promotion to long double, errors as values (NaN or infinity).
-// Source: Boost.Math 1.74 special functions; identities as noted.
+// Each is right to 12 digits for shapes and counts to 1e9 and tails to 1e-300, which Boost alone is not.
+// Source: Boost.Math 1.74 special functions; engine/numbers/large_shapes.hpp; identities as noted.
 // Checked by: tests/engine/numbers/distributions_test.cpp, tests/reference/distributions.tsv.
 #pragma once
+
+#include "engine/numbers/share.hpp"
 
 namespace countsel {
 
@@ -33,13 +36,19 @@ double poisson_exactly(double k, double mu);   ///< P(X = k)
 double beta_below(double a, double b, double x);
 double beta_above(double a, double b, double x);
 double beta_density(double a, double b, double x);
-double beta_quantile(double a, double b, double p);        ///< x with I_x(a, b) = p
-double beta_upper_quantile(double a, double b, double q);  ///< x with 1 - I_x(a, b) = q
+Tails beta_tails(double a, double b, const Share& share);       ///< both, at part : rest
+double beta_quantile_odds(double a, double b, double p);        ///< x / (1 - x) at beta_quantile
+double beta_upper_quantile_odds(double a, double b, double q);  ///< x / (1 - x) at beta_upper_quantile
+double beta_quantile(double a, double b, double p);             ///< x with I_x(a, b) = p
+double beta_upper_quantile(double a, double b, double q);       ///< x with 1 - I_x(a, b) = q
 
 // Binomial of n trials with chance p; k whole.
 double binomial_at_most(double k, double n, double p);
 double binomial_at_least(double k, double n, double p);
 double binomial_exactly(double k, double n, double p);
+double binomial_at_most(double k, double n, const Share& share);
+double binomial_at_least(double k, double n, const Share& share);
+double binomial_exactly(double k, double n, const Share& share);
 
 // Chi-square, Student's t, F.
 double chi_square_below(double x, double df);
