@@ -1,0 +1,189 @@
+// protocol/data/intake.cpp -- roles, rows kept, roles filled.
+#include "protocol/data/intake.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <limits>
+#include <unordered_set>
+
+#include "protocol/data/column_reader.hpp"
+#include "protocol/data/totals.hpp"
+#include "protocol/declare/nearest.hpp"
+
+namespace countsel {
+namespace {
+
+std::vector<std::string> column_names(const Table& table) {
+  std::vector<std::string> names;
+  for (const auto& column : table.columns) names.push_back(column->name);
+  return names;
+}
+
+[[noreturn]] void no_such_column(const std::string& name, const Table& table, const std::string& what) {
+  const auto names = column_names(table);
+  const std::string near = nearest(name, names);
+  std::string hint = near.empty() ? "The columns are: " : "Did you mean \"" + near + "\"?";
+  if (near.empty()) {
+    for (std::size_t i = 0; i < names.size() && i < 20; ++i) hint += (i ? ", " : "") + names[i];
+    hint += ".";
+  }
+  throw Refusal(Code::not_found, "There is no column \"" + name + "\"" + what + ".", {}, hint);
+}
+
+void check_lengths(const Table& table, const Places& places) {
+  if (table.uneven_row != 0) {
+    throw Refusal(Code::length_mismatch,
+                  "Row " + std::to_string(table.uneven_row) + " has " + std::to_string(table.uneven_cells) +
+                      " cells, where the first row has another number.",
+                  {{table.columns.empty() ? "" : table.columns.front()->name, table.uneven_row}},
+                  "Give every row one cell for each column; a blank cell is null.");
+  }
+  if (table.columns.empty()) return;
+  const auto& first = *table.columns.front();
+  for (const auto& column : table.columns) {
+    if (column->size() == first.size()) continue;
+    throw Refusal(Code::length_mismatch,
+                  first.name + " has " + std::to_string(first.size()) + " rows and " + column->name +
+                      " has " + std::to_string(column->size()) + "; they should have as many.",
+                  {{first.name, 0}, {column->name, 0}}, "Select ranges of the same length.");
+  }
+  (void)places;
+}
+
+/// Rows that `of.only` keeps; empty vector and false: all.
+bool keep_only(const Table& table, const Json& rest, std::vector<char>& keep, std::vector<Note>& notes) {
+  const auto only = rest.find("only");
+  if (only == rest.end() || only->is_null()) return false;
+  if (!only->is_object()) {
+    throw Refusal(Code::bad_type, "of.only is an object of columns and the values to keep.", {},
+                  R"(For example {"quarter":["Q1","Q2"]}.)");
+  }
+  keep.assign(table.rows(), 1);
+  for (const auto& [name, wanted] : only->items()) {
+    const Column* column = table.find(name);
+    if (!column) no_such_column(name, table, " for of.only");
+    const Json list = wanted.is_array() ? wanted : Json::array({wanted});
+    std::unordered_set<std::string> values;
+    for (const auto& value : list)
+      values.insert(value.is_null() ? "" : bind::level_of("of.only." + name, value));
+    std::unordered_set<std::string> met;
+    for (std::size_t i = 0; i < keep.size(); ++i) {
+      const std::string text = level_text(*column, i);
+      const bool in = values.count(text) > 0;
+      if (in) met.insert(text);
+      keep[i] = keep[i] && in;
+    }
+    for (const auto& value : values) {
+      if (met.count(value)) continue;
+      notes.push_back({"only_unmatched", "No row of " + name + " is \"" + value + "\".", {{name, 0}}});
+    }
+  }
+  return true;
+}
+
+}  // namespace
+
+Casting cast_roles(const Question& question, const Table& table, const Json& rest) {
+  Casting casting;
+  const auto roles = rest.find("roles");
+  const bool given = roles != rest.end() && !roles->is_null();
+  if (given && !roles->is_object()) {
+    throw Refusal(Code::bad_type, "of.roles is an object of roles and column names.", {},
+                  R"(For example {"count":"bursts","exposure":"km_years"}.)");
+  }
+  std::string missing;
+  for (const auto& spec : question.roles) {
+    const Column* column = nullptr;
+    if (!given) {
+      column = table.find(spec.name);
+    } else if (const auto named = roles->find(spec.name); named != roles->end() && !named->is_null()) {
+      if (!named->is_string()) bind::wrong_type("of.roles." + spec.name, "the name of a column", *named);
+      const auto& name = named->get_ref<const std::string&>();
+      column = table.find(name);
+      if (!column) no_such_column(name, table, " for the role " + spec.name);
+    }
+    if (spec.required && !column) missing += (missing.empty() ? "" : ", ") + spec.name;
+    casting.roles.push_back(column);
+  }
+  if (!missing.empty()) {
+    std::string hint =
+        given ? "Name a column for it in of.roles." : "Name the columns in of.roles, or give it directly.";
+    throw Refusal(Code::missing, question.name + " needs the role " + missing + ".", {}, hint);
+  }
+  return casting;
+}
+
+void take_in(const Question& question, const Table& table, const Casting& casting, const Json& rest,
+             const Places& places, Asked& asked, std::vector<Note>& notes) {
+  check_lengths(table, places);
+  const std::size_t rows = table.rows();
+  asked.rows_sent = rows;
+
+  std::vector<char> keep;
+  bool some = keep_only(table, rest, keep, notes);
+  RowsLeftOut left_out(rows, keep, some);
+
+  std::vector<const Column*> all;
+  for (const auto& column : table.columns) all.push_back(column.get());
+  std::vector<std::pair<std::string, Holds>> extra;
+  if (question.extra_columns) {
+    std::vector<const Column*> free;
+    for (const auto* column : all) {
+      if (std::find(casting.roles.begin(), casting.roles.end(), column) == casting.roles.end())
+        free.push_back(column);
+    }
+    extra = question.extra_columns(asked, free, notes);
+  }
+
+  ColumnReader reader(places, asked.cells, left_out, notes);
+  std::vector<ReadColumn> role_columns(casting.roles.size());
+  for (std::size_t i = 0; i < casting.roles.size(); ++i) {
+    if (casting.roles[i]) role_columns[i] = reader.read(*casting.roles[i], question.roles[i].holds);
+  }
+  std::vector<ReadColumn> extra_columns;
+  for (const auto& [name, holds] : extra) {
+    const Column* column = table.find(name);
+    if (!column) no_such_column(name, table, "");
+    extra_columns.push_back(reader.read(*column, holds));
+  }
+  // A count and its exposure are judged together: nothing observed and nothing seen is no row.
+  for (std::size_t i = 0; i < casting.roles.size(); ++i) {
+    if (question.roles[i].holds != Holds::exposure || !casting.roles[i]) continue;
+    const ReadColumn* count = nullptr;
+    for (std::size_t j = 0; j < casting.roles.size(); ++j) {
+      if (question.roles[j].holds == Holds::count && casting.roles[j]) count = &role_columns[j];
+    }
+    reader.settle_zero_exposures(role_columns[i], count);
+  }
+  settle_totals(question, role_columns, places, asked.cells.totals, left_out, notes);
+  left_out.tell(notes, places);
+
+  if (left_out.kept() == 0 && !question.roles.empty()) {
+    throw Refusal(Code::too_few, rows == 0 ? "There are no rows." : "No row is left that can be used.", {},
+                  rows == 0 ? "Send at least one row." : "Look at the blanks in the columns that are used.");
+  }
+  asked.rows = left_out.kept();
+  asked.kept = left_out.indices();
+  const auto share = [&table](const Column* column) {
+    for (const auto& owner : table.columns) {
+      if (owner.get() == column) return owner;
+    }
+    return std::shared_ptr<const Column>();
+  };
+  for (std::size_t i = 0; i < casting.roles.size(); ++i) {
+    Role& role = question.roles[i].at(asked);
+    if (casting.roles[i]) {
+      fill_role(role_columns[i], asked.kept, share(casting.roles[i]), role);
+    } else if (question.roles[i].holds == Holds::exposure) {
+      role.column = question.roles[i].name;
+      role.own_numbers.assign(asked.rows, 1.0);
+      role.numbers = role.own_numbers;
+    }
+  }
+  for (auto& column : extra_columns) {
+    asked.extra.emplace_back();
+    fill_role(column, asked.kept, share(column.column), asked.extra.back());
+  }
+}
+
+}  // namespace countsel

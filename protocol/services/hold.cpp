@@ -1,0 +1,155 @@
+// protocol/services/hold.cpp -- tables kept between requests: hold, held, release.
+#include <algorithm>
+
+#include "protocol/declare/nearest.hpp"
+#include "protocol/services/held_tables.hpp"
+#include "protocol/services/service.hpp"
+
+namespace countsel {
+namespace {
+
+struct Named : Asked {
+  std::string name;
+};
+
+std::string kind_of(const Column& column) {
+  const bool numbers = !column.numbers.empty();
+  const bool texts =
+      !column.texts.empty() || std::any_of(column.tags.begin(), column.tags.end(),
+                                           [](auto tag) { return tag == tag::yes || tag == tag::no; });
+  return numbers && texts ? "numbers and texts" : numbers ? "numbers" : texts ? "levels" : "blank";
+}
+
+std::vector<double> distinct(const std::vector<double>& numbers) {
+  std::vector<double> sorted;
+  for (const double value : numbers) {
+    if (value == value) sorted.push_back(value);
+  }
+  std::sort(sorted.begin(), sorted.end());
+  sorted.erase(std::unique(sorted.begin(), sorted.end()), sorted.end());
+  return sorted;
+}
+
+void require_name(const Named& asked, const char* question) {
+  if (asked.name.empty()) {
+    throw Refusal(Code::missing, std::string(question) + " needs with.name, the name of the table.", {},
+                  R"(For example "with":{"name":"mains"}.)");
+  }
+}
+
+Answer keep(const Named& asked, Context& context) {
+  require_name(asked, "hold");
+  if (!context.table) {
+    throw Refusal(Code::missing, "hold needs a table.", {}, "Give of.columns, of.range or of.file.");
+  }
+  auto table = std::make_shared<Table>(*context.table);
+  const auto& rest = context.request->of.rest;
+  if (rest.contains("origin") && rest["origin"].is_string())
+    table->origin = rest["origin"].get<std::string>();
+  check_table(*table);
+  Answer answer{.say = asked.name + " is held: " + std::to_string(table->rows()) +
+                       (table->rows() == 1 ? " row" : " rows") + ", " +
+                       std::to_string(table->columns.size()) +
+                       (table->columns.size() == 1 ? " column." : " columns.")};
+  answer.figures = {{"rows", static_cast<double>(table->rows())},
+                    {"columns", static_cast<double>(table->columns.size())}};
+  answer.tables = {columns_table(*table)};
+  context.session->hold(asked.name, std::move(table));
+  return answer;
+}
+
+Answer list(const Named&, Context& context) {
+  std::vector<std::string> names;
+  std::vector<double> rows, columns;
+  for (const auto& [name, table] : context.session->held()) {
+    names.push_back(name);
+    rows.push_back(static_cast<double>(table->rows()));
+    columns.push_back(static_cast<double>(table->columns.size()));
+  }
+  Answer answer{.say = names.empty()       ? "No table is held."
+                       : names.size() == 1 ? "1 table is held."
+                                           : std::to_string(names.size()) + " tables are held."};
+  answer.tables = {{"held", {{"name", names}, {"rows", rows}, {"columns", columns}}}};
+  return answer;
+}
+
+Answer drop(const Named& asked, Context& context) {
+  require_name(asked, "release");
+  if (!context.session->release(asked.name)) {
+    std::vector<std::string> names;
+    for (const auto& [name, table] : context.session->held()) names.push_back(name);
+    const std::string near = nearest(asked.name, names);
+    throw Refusal(Code::not_found, "No table is held under \"" + asked.name + "\".", {},
+                  near.empty() ? "" : "Did you mean \"" + near + "\"?");
+  }
+  return {.say = asked.name + " is released."};
+}
+
+const std::vector<TableSpec> columns_spec = {{"columns",
+                                              "the table's columns",
+                                              {{"name", Style::text, "column"},
+                                               {"kind", Style::text, "kind"},
+                                               {"rows", Style::whole, "rows"},
+                                               {"levels", Style::whole, "distinct values"},
+                                               {"blanks", Style::whole, "blank cells"}}}};
+
+}  // namespace
+
+void check_table(const Table& table) {
+  if (table.uneven_row != 0) {
+    throw Refusal(Code::length_mismatch,
+                  "Row " + std::to_string(table.uneven_row) + " has " + std::to_string(table.uneven_cells) +
+                      " cells, where the first row has " + std::to_string(table.columns.size()) + ".",
+                  {}, "Give every row one cell for each column; a blank cell is null.");
+  }
+  for (const auto& column : table.columns) {
+    if (column->size() == table.rows()) continue;
+    throw Refusal(Code::length_mismatch,
+                  table.columns[0]->name + " has " + std::to_string(table.rows()) + " rows and " +
+                      column->name + " has " + std::to_string(column->size()) + "; they should have as many.",
+                  {{table.columns[0]->name, 0}, {column->name, 0}});
+  }
+}
+
+OutTable columns_table(const Table& table) {
+  std::vector<std::string> names, kinds;
+  std::vector<double> rows, levels, blanks;
+  for (const auto& column : table.columns) {
+    names.push_back(column->name);
+    kinds.push_back(kind_of(*column));
+    rows.push_back(static_cast<double>(column->size()));
+    levels.push_back(static_cast<double>(distinct(column->numbers).size() + column->texts.size()));
+    blanks.push_back(static_cast<double>(std::count(column->tags.begin(), column->tags.end(), tag::blank)));
+  }
+  return {"columns",
+          {{"name", names}, {"kind", kinds}, {"rows", rows}, {"levels", levels}, {"blanks", blanks}}};
+}
+
+extern const Question hold = service<Named>(
+    {.name = "hold",
+     .asks = "Keeps a table under a name, so that later requests need not send it again.",
+     .options = {bind::text("name", &Named::name, "the name to hold it under")},
+     .figures = {{"rows", Style::whole, "rows held"}, {"columns", Style::whole, "columns held"}},
+     .tables = columns_spec,
+     .answer = keep,
+     .examples =
+         {R"({"ask":"hold","of":{"columns":{"bursts":[3,0],"km_years":[12,9]}},"with":{"name":"mains"}})"}},
+    {"columns", "range", "file", "header", "origin"}, true);
+
+extern const Question held = service<Named>({.name = "held",
+                                             .asks = "Lists the tables that are held.",
+                                             .tables = {{"held",
+                                                         "the tables held",
+                                                         {{"name", Style::text, "name"},
+                                                          {"rows", Style::whole, "rows"},
+                                                          {"columns", Style::whole, "columns"}}}},
+                                             .answer = list,
+                                             .examples = {R"({"ask":"held"})"}});
+
+extern const Question release =
+    service<Named>({.name = "release",
+                    .asks = "Drops a table that is held.",
+                    .options = {bind::text("name", &Named::name, "the name it is held under")},
+                    .answer = drop});
+
+}  // namespace countsel

@@ -1,0 +1,201 @@
+// protocol/session/session.cpp -- reading, queueing, cancelling, finishing.
+#include "protocol/session/session.hpp"
+
+#include <algorithm>
+#include <cstdio>
+
+#include "protocol/catalogue.hpp"
+#include "protocol/services/quick.hpp"
+#include "protocol/wire/json_writer.hpp"
+#include "protocol/wire/reply.hpp"
+#include "protocol/wire/request_reader.hpp"
+
+namespace countsel {
+namespace {
+
+using Clock = std::chrono::steady_clock;
+
+constexpr std::size_t small_rows = 2000;
+constexpr auto between_progress = std::chrono::milliseconds(100);
+
+}  // namespace
+
+struct Session::Job {
+  enum State { queued, running, done };
+
+  Request request;
+  std::string id, ask;
+  const Question* question = nullptr;
+  std::shared_ptr<const Table> table;
+  std::uint64_t place = 0;
+  Clock::time_point read_at = Clock::now();
+  std::optional<Clock::time_point> deadline;
+  std::atomic<bool> cancelled{false};
+  std::atomic<int> state{queued};
+  std::mutex telling;
+  Clock::time_point told_at;
+};
+
+Session::Session(const ServerOptions& options, int output)
+    : options_(options),
+      output_(output),
+      pool_(options.workers ? options.workers : std::max(1U, std::thread::hardware_concurrency())) {}
+
+Shelf Session::shelf() const {
+  Shelf shelf;
+  shelf.held = [this](const std::string& name) {
+    const auto at = held_.find(name);
+    return at == held_.end() ? nullptr : at->second;
+  };
+  shelf.held_names = [this] {
+    std::vector<std::string> names;
+    for (const auto& [name, table] : held_) names.push_back(name);
+    return names;
+  };
+  shelf.files = options_.files;
+  shelf.largest_file = options_.longest_line;
+  return shelf;
+}
+
+Work Session::work_for(const std::shared_ptr<Job>& job) {
+  Work work;
+  work.workers = pool_.workers();
+  work.progress.asked = [job = job.get()] {
+    if (job->cancelled.load(std::memory_order_relaxed)) {
+      throw Refusal(Code::cancelled, "The request was cancelled.");
+    }
+    if (job->deadline && Clock::now() > *job->deadline) {
+      throw Refusal(Code::out_of_time, "The time allowed for the request is over.", {},
+                    "Allow more with within_s, or ask about fewer rows or terms.");
+    }
+  };
+  if (job->request.progress) {
+    job->told_at = Clock::now();
+    work.progress.told = [this, job = job.get()](double share, std::string_view doing) {
+      const std::lock_guard lock(job->telling);
+      const auto now = Clock::now();
+      if (now - job->told_at < between_progress) return;
+      job->told_at = now;
+      std::string body;
+      JsonWriter(body).open('{').key("share").number(share).key("doing").text(doing).close('}');
+      output_.aside(reply_line(job->id, "", "progress", body));
+    };
+  }
+  return work;
+}
+
+void Session::finish(Job& job, const Reply& reply) {
+  if (options_.log) {
+    const auto took = std::chrono::duration<double, std::milli>(Clock::now() - job.read_at).count();
+    std::fprintf(stderr, "countsel: %s %s: %s in %.3f ms\n", job.id.empty() ? "-" : job.id.c_str(),
+                 job.ask.empty() ? "?" : job.ask.c_str(), reply.refused() ? "refused" : "answered", took);
+  }
+  {
+    // An id is free again as soon as its reply is on its way, or the answer could be overtaken by a refusal.
+    const std::lock_guard lock(mutex_);
+    const auto [first, last] = pending_.equal_range(job.id);
+    for (auto at = first; at != last; ++at) {
+      if (at->second.get() == &job) {
+        pending_.erase(at);
+        break;
+      }
+    }
+  }
+  output_.reply(job.place, reply_line(job.id, job.ask, reply.part, reply.body));
+  if (unfinished_.fetch_sub(1) == 1) {
+    const std::lock_guard lock(mutex_);
+    settled_.notify_all();
+  }
+}
+
+void Session::run(const std::shared_ptr<Job>& job) {
+  int expected = Job::queued;
+  if (!job->state.compare_exchange_strong(expected, Job::running)) return;  // cancelled while it waited
+  Context context;
+  context.work = work_for(job);
+  context.session = this;
+  const Reply reply = answer_request(job->request, *job->question, std::move(job->table), std::move(context));
+  job->state = Job::done;
+  finish(*job, reply);
+}
+
+bool Session::cancel(const std::string& id) {
+  std::shared_ptr<Job> job;
+  {
+    const std::lock_guard lock(mutex_);
+    const auto at = pending_.find(id);
+    if (id.empty() || at == pending_.end()) return false;
+    job = at->second;
+  }
+  job->cancelled = true;
+  int expected = Job::queued;
+  if (job->state.compare_exchange_strong(expected, Job::done)) {
+    finish(*job, refuse(Refusal(Code::cancelled, "The request was cancelled.")));
+  }
+  return true;
+}
+
+void Session::handle(Request request) {
+  auto job = std::make_shared<Job>();
+  job->place = output_.reserve();
+  job->id = request.id;
+  job->ask = request.ask;
+  if (request.within_s) {
+    const double seconds = std::min(*request.within_s, 1e8);
+    job->deadline =
+        job->read_at + std::chrono::duration_cast<Clock::duration>(std::chrono::duration<double>(seconds));
+  }
+  const bool idle = unfinished_.fetch_add(1) == 0;
+  bool pending_twice = false;
+  {
+    const std::lock_guard lock(mutex_);
+    pending_twice = !job->id.empty() && pending_.count(job->id) > 0;
+    if (!pending_twice) pending_.emplace(job->id, job);
+  }
+  try {
+    job->question = &question_of(request);
+    if (pending_twice) {
+      throw Refusal(Code::bad_value, "A request with the id " + job->id + " is still pending.", {},
+                    "Give each pending request an id of its own.");
+    }
+    if (job->question->name == "quick") {
+      job->question = &read_quick(request);
+      job->table = take_table(request.of, shelf());
+    } else if (!job->question->roles.empty() || job->question->takes_columns) {
+      job->table = take_table(request.of, shelf());
+    }
+  } catch (...) {
+    return finish(*job, refuse(current_trouble()));
+  }
+  job->request = std::move(request);
+  const bool small = job->question->light && (!job->table || job->table->rows() <= small_rows);
+  if (job->question->service || (idle && small)) {
+    run(job);
+  } else {
+    pool_.post([this, job] { run(job); });
+  }
+}
+
+void Session::serve(int input) {
+  LineSource source(input, options_.longest_line);
+  while (!ending_ && source.next_line()) handle(read_request(source));
+  std::unique_lock lock(mutex_);
+  settled_.wait(lock, [this] { return unfinished_.load() == 0; });
+}
+
+Reply Session::answer_now(Request& request) {
+  try {
+    const Question* question = &question_of(request);
+    std::shared_ptr<const Table> table;
+    if (question->name == "quick") question = &read_quick(request);
+    if (!question->roles.empty() || question->takes_columns) table = take_table(request.of, shelf());
+    Context context;
+    context.work.workers = pool_.workers();
+    context.session = this;
+    return answer_request(request, *question, std::move(table), std::move(context));
+  } catch (...) {
+    return refuse(current_trouble());
+  }
+}
+
+}  // namespace countsel
