@@ -11,41 +11,13 @@
 
 #include "engine/numbers/distributions.hpp"
 #include "engine/numbers/large_shapes.hpp"
+#include "engine/numbers/roots.hpp"
 
 namespace countsel {
 namespace {
 
 constexpr double infinity = std::numeric_limits<double>::infinity();
 constexpr double nan = std::numeric_limits<double>::quiet_NaN();
-
-// log(tail / wanted) and its slope against log(argument); a lower tail rises, an upper one falls.
-struct LogTail {
-  double gap, slope;
-};
-
-// A step of s leaves an error of about s^2 times the density's sharpness, so steps stop once that is
-// below rounding; a step out of the bracket is replaced by the bracket's geometric middle.
-template <class Tail>
-double solve(const Tail& tail, double guess, double sharpness) {
-  double x = guess, low = 0, high = infinity;
-  for (int step = 0; step < 300; ++step) {
-    if (!(x > 0) || std::isinf(x)) return x;
-    const LogTail here = tail(x);
-    if (std::isnan(here.gap)) return nan;
-    if (here.gap == 0) return x;
-    const bool rising = here.slope > 0;
-    ((here.gap > 0) == rising ? high : low) = x;
-    const double change = -here.gap / here.slope;
-    double next = x * std::exp(change);
-    if (!(next > low && next < high)) {
-      if (std::abs(change) < 1e-15) return x;
-      next = low == 0 ? high / 16 : std::isinf(high) ? low * 16 : std::sqrt(low) * std::sqrt(high);
-    }
-    if (next == x || std::abs(change) * sharpness < 1e-8) return next;
-    x = next;
-  }
-  return x;
-}
 
 enum class Part { below, above };
 
@@ -62,10 +34,10 @@ double gamma_solve(double a, double wanted, Part part) {
   const auto tail = [&](double x) {
     const double here = below ? gamma_below(a, x) : gamma_above(a, x);
     const double slope = gamma_front(a, x) / here;
-    return here > 0 ? LogTail{std::log(here / wanted), below ? slope : -slope}
-                    : LogTail{-infinity, below ? 1.0 : -1.0};
+    return here > 0 ? ValueSlope{std::log(here / wanted), below ? slope : -slope}
+                    : ValueSlope{-infinity, below ? 1.0 : -1.0};
   };
-  return solve(tail, guess, 1 + std::sqrt(a));
+  return log_newton_root(tail, guess, 1 + std::sqrt(a));
 }
 
 // Odds x / (1 - x) where the tail named by `part` is `wanted` (at most about one half).
@@ -86,10 +58,10 @@ double beta_solve(double a, double b, double wanted, Part part) {
   const auto tail = [&](double odds) {
     const Share share = share_of_odds(1, odds, 1);
     const double here = beta_tails(a, b, share).below;
-    return here > 0 ? LogTail{std::log(here / wanted), beta_front(a, b, share) / here}
-                    : LogTail{-infinity, 1};
+    return here > 0 ? ValueSlope{std::log(here / wanted), beta_front(a, b, share) / here}
+                    : ValueSlope{-infinity, 1};
   };
-  return solve(tail, guess, 1 + std::sqrt(std::min(a, b)));
+  return log_newton_root(tail, guess, 1 + std::sqrt(std::min(a, b)));
 }
 
 }  // namespace

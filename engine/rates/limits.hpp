@@ -57,6 +57,19 @@ struct Limits {
 /// Accuracy: 12 digits for counts to 1e9 and tails to 1e-300. Cost: O(1).
 Limits rate_limits(double count, double exposure, const LimitsSpec& spec);
 
+/// Refuses bad_value where the confidence is not inside (0, 1) or the prior is negative or not finite.
+void require_limits(const LimitsSpec& spec);
+
+enum class End { low, high };
+
+/// One end of the limits for the mean of a count, in events; what rate_limits divides by exposure.
+///   tail  the chance left beyond this end, inside (0, 1)
+/// Unchecked; values and NaN as at rate_limits. `bayes` is in events per unit of exposure + prior rate.
+double mean_limit(double count, End end, double tail, const LimitsSpec& spec);
+
+/// The chance beyond each computed end: (1 - confidence) / 2, or all of it on the one side.
+double tail_of(double confidence, Side side);
+
 /// Limits for a rate whose counts vary `dispersion` times as much as a Poisson's: on the log scale,
 /// rate exp(-+ t sqrt(dispersion / count)), t Student's quantile on `df` degrees of freedom (McCullagh
 /// and Nelder 1989, ch. 6). An infinite df takes the normal quantile.
