@@ -6,7 +6,7 @@
 // so the bytes agree wherever doubles do and products are not fused with sums.
 // Source: Blackman and Vigna, ACM Trans. Math. Softw. 47 (2021) 36, generator xoshiro256++, seeded by
 // SplitMix64 (Steele, Lea and Flood, OOPSLA 2014).
-// Checked by: tests/engine/numbers/random_test.cpp, tests/reference/random.tsv.
+// Checked by: tests/engine/numbers/random_test.cpp, tests/reference/numbers/random_bits.tsv.
 #pragma once
 
 #include <array>

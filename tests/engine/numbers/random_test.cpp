@@ -16,7 +16,7 @@ namespace countsel {
 namespace {
 
 TEST_CASE("the stream gives the bits of the published generator") {
-  std::ifstream file(REFERENCE_DIR "/random.tsv");
+  std::ifstream file(REFERENCE_DIR "/numbers/random_bits.tsv");
   REQUIRE(file);
   std::string line;
   std::getline(file, line);

@@ -1,4 +1,4 @@
-"""Writes random.tsv: xoshiro256++ and SplitMix64 in plain Python whole numbers, independent of the engine."""
+"""Writes random_bits.tsv: xoshiro256++ and SplitMix64 in plain Python whole numbers, independent of the engine."""
 M = (1 << 64) - 1
 
 
@@ -40,8 +40,8 @@ z = (z + 0x9E3779B97F4A7C15) & M
 assert mix(z) == 6457827717110365317
 assert run([1, 2, 3, 4], 4) == [41943041, 58720359, 3588806011781223, 3591011842654386]
 
-with open("random.tsv", "w") as f:
-    f.write("# xoshiro256++ seeded by SplitMix64; made by random.py (Python whole numbers). Whole and exact.\n")
+with open("random_bits.tsv", "w") as f:
+    f.write("# xoshiro256++ seeded by SplitMix64; made by random_bits.py (Python whole numbers). Whole and exact.\n")
     f.write("seed\tstream\tindex\tbits\n")
     for seed, stream in [(0, 0), (1, 0), (1234567, 0), (20240229, 0), (20240229, 1), (20240229, 999), (M, M)]:
         for i, bits in enumerate(outputs(seed, stream, 5)):
