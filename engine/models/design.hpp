@@ -13,6 +13,8 @@
 #include <string>
 #include <vector>
 
+#include "engine/work.hpp"
+
 namespace countsel {
 
 /// A source column as the caller holds it; nothing is owned or copied. Exactly one of `numbers` (n finite
@@ -72,6 +74,7 @@ struct TermColumns {
   /// Combinations in order of first appearance; level codes, one a factor.
   std::vector<std::vector<std::int32_t>> combinations;
   std::vector<std::string> level_names;  ///< of the combinations: "iron", "iron x clay"
+  std::size_t reference_place = 0;       ///< where the reference stands among the levels (one factor)
   std::size_t first = 0;                 ///< index of its first coefficient
   /// Coefficient of combination c and product k.
   std::size_t coefficient(std::size_t c, std::size_t k) const { return first + c * products.size() + k; }
@@ -99,16 +102,19 @@ struct Design {
 };
 
 /// Makes the design.
-///   columns   source columns, all of n rows, outliving the design
+///   columns   source columns, all of `rows` rows, outliving the design
 ///   terms     any number; none leaves the baseline alone
-///   exposure  n (or empty: 1 each), times any frequency weight: chooses default references
+///   exposure  of each row (or empty: 1 each), times any frequency weight: chooses default references
 /// Levels and combinations without a row get no coefficient; levels come in order of first appearance.
 /// A cross has a coefficient a combination in which no part is at its reference: the product of its parts'
 /// columns. A levels term whose column has one level only has none.
 /// Refuses: no rows (too_few), columns of different lengths (length_mismatch), a slope of levels or levels of
-/// a number (bad_type), a reference that is no level (bad_value), a logarithm or power that is not finite in
-/// some row (bad_value), numbers that are not finite (bad_value).
-Design make_design(std::span<const SourceColumn> columns, std::span<const Term> terms,
-                   std::span<const double> exposure = {});
+/// a number (bad_type), a reference that is no level of a row (bad_value), a logarithm or power that is not
+/// finite in some row (bad_value). That plain numbers are finite is seen when the model is fitted.
+Design make_design(std::span<const SourceColumn> columns, std::span<const Term> terms, std::size_t rows,
+                   std::span<const double> exposure = {}, const Work& work = {});
+
+/// The same design without one term; coefficients after it move up.
+Design without_term(const Design& design, std::size_t term);
 
 }  // namespace countsel

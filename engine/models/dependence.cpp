@@ -1,0 +1,158 @@
+// engine/models/dependence.cpp -- remainders of nearly explained columns, row by row.
+#include "engine/models/dependence.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+namespace countsel {
+namespace {
+
+/// Below this share of its parts in every row, a remainder is rounding.
+constexpr double rounding_share = 16 * 2.3e-16;
+
+void add_to(Combination& combination, const Combination& more, double multiple) {
+  for (const auto& [k, share] : more) {
+    const DoubleDouble change = share * DoubleDouble(multiple);
+    const auto at =
+        std::find_if(combination.begin(), combination.end(), [&](const auto& c) { return c.first == k; });
+    if (at == combination.end())
+      combination.emplace_back(k, change);
+    else
+      at->second = at->second + change;
+  }
+}
+
+struct Remainder {
+  double worst = 0;   ///< largest share of its parts in a row
+  double square = 0;  ///< weighted sum of squares
+  double weight = 0;  ///< sum of weights
+};
+
+/// One pass: how large the remainder is, and its weighted products with the working columns.
+Remainder measure(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
+                  const Eigen::VectorXd& gamma, PassRequest request, const RawForm& form,
+                  Eigen::VectorXd& products, const Work& work) {
+  const std::size_t blocks = (data.rows + block_rows - 1) / block_rows;
+  std::vector<Remainder> by_block(blocks);
+  request.cross = request.fit = false;
+  request.rewrite = [&](const BlockReader& block, const double*, double* score, double* information) {
+    Remainder& own = by_block[block.start / block_rows];
+    for (std::size_t r = 0; r < block.size; ++r) {
+      if (!(information[r] > 0)) {
+        score[r] = 0;
+        continue;
+      }
+      const FormValue value = evaluate(layout, form, block.start + r);
+      if (value.magnitude > 0) own.worst = std::max(own.worst, std::fabs(value.value) / value.magnitude);
+      own.square += information[r] * value.value * value.value;
+      own.weight += information[r];
+      score[r] = information[r] * value.value;
+    }
+  };
+  products = assemble_score(layout, basis, run_pass(layout, basis, data, family, gamma, request, work));
+  Remainder all;
+  for (const Remainder& own : by_block) {
+    all.worst = std::max(all.worst, own.worst);
+    all.square += own.square;
+    all.weight += own.weight;
+  }
+  return all;
+}
+
+double own_information(const Information& information, std::size_t coefficient) {
+  for (std::size_t k = 0; k < information.rest.size(); ++k)
+    if (information.rest[k] == coefficient) return information.full(k, k);
+  for (std::size_t k = 0; k < information.absorbed.size(); ++k)
+    if (information.absorbed[k] == coefficient) return information.diagonal[k];
+  return 0;
+}
+
+/// Nested level columns, the commonest aliases, need no pass: with multiples rounded to whole numbers the
+/// remainder is 0 at every code that has a row.
+bool vanishes_by_code(const Layout& layout, const Sums& sums, Combination& remainder) {
+  Combination whole;
+  for (const auto& [k, multiple] : remainder) {
+    const double rounded = std::round(multiple.value());
+    if (std::fabs(rounded - multiple.value()) > 1e-6) return false;
+    if (rounded != 0) whole.emplace_back(k, DoubleDouble(rounded));
+  }
+  const RawForm form = make_form(layout, whole);
+  double constant = 0;
+  for (const auto& [dense, multiple] : form.dense) {
+    if (dense != 0) return false;
+    constant = multiple.value();
+  }
+  if (form.tables.size() != 1 || form.tables[0].multiplier != 0) return false;
+  const RawForm::Table& table = form.tables[0];
+  const Group& group = layout.groups[table.group];
+  const auto& information = sums.groups[table.group].table[group.slot(0)];
+  for (std::size_t code = 0; code < group.size(); ++code)
+    if (information[code * sums.stride] > 0 && table.value[code].value() + constant != 0) return false;
+  remainder = std::move(whole);
+  return true;
+}
+
+}  // namespace
+
+Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
+               Eigen::VectorXd& gamma, const PassRequest& request, const Work& work) {
+  Settled settled;
+  for (;;) {
+    settled.sums = run_pass(layout, basis, data, family, gamma, request, work);
+    settled.information = assemble(layout, basis, settled.sums);
+    settled.factor = factorise(settled.information, layout.coefficients, doubtful_share);
+    std::vector<std::size_t> doubtful = settled.factor.dependent;
+    settled.condition = std::max(settled.condition, 1 / std::sqrt(settled.factor.least_pivot));
+    if (doubtful.empty()) return settled;
+    std::sort(doubtful.begin(), doubtful.end());
+    std::vector<Combined> combined;
+    for (const std::size_t j : doubtful) {
+      Combination remainder = working_column(layout, basis, j);
+      const double before = own_information(settled.information, j);
+      Remainder size;
+      bool vanishes = before == 0;
+      if (!vanishes) {
+        const Eigen::VectorXd explained = regress(settled.factor, settled.information, j);
+        const auto take_away = [&](const Eigen::VectorXd& share) {
+          for (std::size_t k = 0; k < layout.coefficients; ++k)
+            if (share[k] != 0) add_to(remainder, working_column(layout, basis, k), -share[k]);
+        };
+        take_away(explained);
+        vanishes = vanishes_by_code(layout, settled.sums, remainder);
+        // Two corrections bring the remainder from the factor's digits to those of double-double.
+        Eigen::VectorXd products;
+        for (int round = 0; round < 3 && !vanishes; ++round) {
+          size = measure(layout, basis, data, family, gamma, request, make_form(layout, remainder), products,
+                         work);
+          if (round < 2) take_away(solve(settled.factor, products));
+        }
+        vanishes = vanishes || size.worst <= rounding_share;
+      }
+      gamma[j] = 0;
+      if (vanishes) {
+        const DoubleDouble own = remainder.front().second;
+        for (auto& [k, multiple] : remainder) multiple = DoubleDouble(multiple.value() / own.value());
+        basis.active[j] = 0;
+        Combination onto;
+        for (std::size_t i = 1; i < remainder.size(); ++i)
+          onto.emplace_back(remainder[i].first, -remainder[i].second);
+        basis.aliases.emplace_back(j, std::move(onto));
+        settled.left_out.push_back({j, std::move(remainder)});
+        continue;
+      }
+      const double spread = std::sqrt(size.square / size.weight);
+      settled.condition = std::max(settled.condition, std::sqrt(before / size.square));
+      Combined column{j, remainder, make_form(layout, remainder), std::ldexp(1.0, -std::ilogb(spread))};
+      if (basis.combined_of[j] >= 0)
+        basis.combined[basis.combined_of[j]] = std::move(column);
+      else
+        combined.push_back(std::move(column));
+    }
+    for (Combined& column : combined) {
+      basis.combined_of[column.coefficient] = static_cast<std::ptrdiff_t>(basis.combined.size());
+      basis.combined.push_back(std::move(column));
+    }
+  }
+}
+
+}  // namespace countsel
