@@ -53,8 +53,8 @@ double mid_p_end(double count, End end, double tail) {
 // log likelihood is lower by count * gap. Returns 1 + u.
 double likelihood_factor(double gap, double sign) {
   const double s = std::sqrt(2 * gap);
-  if (sign < 0 && s > 1) {  // 1 + u is small: solve for its logarithm
-    double w = -1 - gap;
+  if (sign < 0 && s > 0.3) {  // 1 + u may be small: solve for its logarithm
+    double w = s < 2 ? -s - s * s / 6 : -1 - gap;
     for (int step = 0; step < 50; ++step) {
       const double change = (std::expm1(w) - w - gap) / std::expm1(w);
       w -= change;
@@ -76,7 +76,7 @@ double likelihood_factor(double gap, double sign) {
 
 double likelihood_end(double count, double z) {
   if (count == 0) return z > 0 ? z * z / 2 : 0;
-  return z == 0 ? count : count * likelihood_factor(z * z / 2 / count, z);
+  return z == 0 ? count : count * likelihood_factor(z * z / 2 / count, std::copysign(1.0, z));
 }
 
 // mean with (count - mean)^2 = z^2 mean; the smaller root is count^2 over the larger.

@@ -39,7 +39,7 @@ struct LimitsSpec {
   double confidence = 0.95;  ///< inside (0, 1); used as given
   Side side = Side::both;
   StoppedBy stopped_by = StoppedBy::time;  ///< only `exact` heeds it: both limits then have shape = count
-  GammaPrior prior;                        ///< only `bayes` heeds it
+  GammaPrior prior = {};                   ///< only `bayes` heeds it
 };
 
 /// NaN: the method has no value here. +-infinity: unbounded.
