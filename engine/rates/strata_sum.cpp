@@ -23,13 +23,14 @@ Number cumulant_series(double p, double q, Number z) {
   return z * z * (v / 2 + z * (v * skew / 6 + z * (k4 / 24 + z * (k5 / 120 + z * (k6 / 720)))));
 }
 
-// K(p, i t) for 0 <= t <= pi.
+// K(p, i t) for 0 <= t <= pi. K(p, d) = K(q, -d) lets the smaller chance speak: with p near 1 the large
+// terms would cancel.
 Complex centred_cumulant_on_circle(double p, double q, double t) {
+  if (p > q) return std::conj(centred_cumulant_on_circle(q, p, t));
   if (t < 0.003) return cumulant_series(p, q, Complex(0, t));
   const double half = std::sin(t / 2);
-  const double real = -2 * p * half * half, imaginary = p * std::sin(t);
-  const double log_size = std::log1p(2 * real + real * real + imaginary * imaginary) / 2;
-  return {log_size, std::atan2(imaginary, 1 + real) - p * t};
+  const double log_size = std::log1p(-4 * p * q * half * half) / 2;
+  return {log_size, std::atan2(p * std::sin(t), 1 - 2 * p * half * half) - p * t};
 }
 
 Complex characteristic(const StrataSum& sum, double t) {
@@ -81,7 +82,8 @@ double outward_sum(const StrataSum& sum, bool upwards, bool with_seen, double ra
 
 double centred_cumulant(double p, double q, double d) {
   if (std::abs(d) < 0.003) return cumulant_series(p, q, d);
-  return d < 0 ? std::log1p(p * std::expm1(d)) - p * d : std::log1p(q * std::expm1(-d)) + q * d;
+  if (p > q) return centred_cumulant(q, p, -d);
+  return d < 700 ? std::log1p(p * std::expm1(d)) - p * d : q * d + std::log(p);
 }
 
 StrataSum strata_sum(std::span<const TwoRates> strata, bool with_chances) {
@@ -103,18 +105,20 @@ StrataSum strata_sum(std::span<const TwoRates> strata, bool with_chances) {
   }
   const std::vector<TiltedStratum> even = sum.strata;
   const auto tilt = [&](double log_ratio) {
-    Sum mean;
+    // Whichever of A and M - A is the smaller is compared with its mean.
+    const bool other = sum.seen > sum.events / 2;
+    Sum excess;
+    excess.add(other ? sum.events - sum.seen : -sum.seen);
     double slope = 0;
     const double ratio = std::exp(log_ratio);
     for (std::size_t i = 0; i < even.size(); ++i) {
       const double up = ratio * even[i].chance, down = even[i].other_chance;
       sum.strata[i].chance = up / (up + down);
       sum.strata[i].other_chance = down / (up + down);
-      mean.add(even[i].events * sum.strata[i].chance);
+      excess.add(even[i].events * (other ? -sum.strata[i].other_chance : sum.strata[i].chance));
       slope += even[i].events * sum.strata[i].chance * sum.strata[i].other_chance;
     }
-    mean.add(-sum.seen);
-    return ValueSlope{mean.value(), slope};
+    return ValueSlope{excess.value(), slope};
   };
   // With one exposure ratio everywhere the estimate is the odds over it; the true one lies between.
   const double log_odds = std::log(sum.seen / (sum.events - sum.seen));
