@@ -43,12 +43,12 @@ double draw_normal(RandomStream& stream);
 /// below 0.01.
 double draw_gamma(RandomStream& stream, double shape);
 
-/// Poisson with mean 0 <= mean <= 1e12: sequential search below 10, above it transformed rejection
+/// Poisson with mean 0 <= mean <= 1e12: sequential search below 25, above it transformed rejection
 /// (Hoermann, Insurance: Math. Econ. 12 (1993) 39-45, PTRS).
 double draw_poisson(RandomStream& stream, double mean);
 
 /// Binomial of `trials` (whole, 0 to 1e12) with chance in [0, 1]: sequential search while the smaller of
-/// the expected successes and failures is below 10, else transformed rejection (Hoermann, J. Stat.
+/// the expected successes and failures is below 25, else transformed rejection (Hoermann, J. Stat.
 /// Comput. Simul. 46 (1993) 101-110, BTRS).
 double draw_binomial(RandomStream& stream, double trials, double chance);
 

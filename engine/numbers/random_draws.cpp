@@ -3,6 +3,7 @@
 // A rejection step compares logarithms. The C library's differ in the last bit between machines, which
 // would now and then change a draw, so the few functions needed are written out here.
 #include <algorithm>
+#include <array>
 #include <cmath>
 
 #include "engine/numbers/random.hpp"
@@ -13,11 +14,22 @@ namespace {
 constexpr double ln2_high = 0x1.62e42fefa38p-1;  // the leading bits: k * ln2_high is exact
 constexpr double ln2_low = 0x1.ef35793c7673p-45;
 
+// 1 / n as a table: a division costs more than the rest of a step.
+constexpr std::size_t searched = 200;
+constexpr auto reciprocals = [] {
+  std::array<double, searched + 2> table{};
+  for (std::size_t n = 1; n < table.size(); ++n) table[n] = 1 / static_cast<double>(n);
+  return table;
+}();
+
+// Below this mean a search from 0 beats rejection.
+constexpr double search_below = 25;
+
 // 2 artanh(z), |z| <= 0.18.
 double two_artanh(double z) {
   const double z2 = z * z;
   double sum = 0;
-  for (int n = 23; n >= 3; n -= 2) sum = z2 * (1.0 / n + sum);
+  for (std::size_t n = 23; n >= 3; n -= 2) sum = z2 * (reciprocals[n] + sum);
   return 2 * z + 2 * z * sum;
 }
 
@@ -39,7 +51,7 @@ double portable_exp(double x) {
   const double k = std::floor(x / (ln2_high + ln2_low) + 0.5);
   const double r = (x - k * ln2_high) - k * ln2_low;
   double sum = 1;
-  for (int n = 14; n >= 1; --n) sum = 1 + r / n * sum;
+  for (std::size_t n = 14; n >= 1; --n) sum = 1 + r * reciprocals[n] * sum;
   return std::ldexp(sum, static_cast<int>(k));
 }
 
@@ -60,17 +72,29 @@ double log_factorial(double k) {
   return (k + 0.5) * portable_log(k + 1) - (k + 1) + half_log_two_pi + stirling_rest(k);
 }
 
-// Sequential search from 0 for a law whose chances follow p(k + 1) = p(k) * step(k). A uniform too close
-// to 1 for the rounded chances to reach is drawn again.
+// (1 - p)^n for whole n. Squaring is exact enough for small n and much the faster.
+double power_of_rest(double p, double n) {
+  if (n > 1e5) return portable_exp(n * portable_log1p(-p));
+  double square = 1 - p, product = 1;
+  for (auto left = static_cast<std::uint32_t>(n); left != 0; left >>= 1) {
+    if ((left & 1U) != 0) product *= square;
+    square *= square;
+  }
+  return product;
+}
+
+// Sequential search from 0 for a law whose chances follow p(k + 1) = p(k) * step(k) / (k + 1). A uniform too
+// close to 1 for the rounded chances to reach is drawn again.
 template <typename Step>
 double search_up(RandomStream& stream, double at_zero, double last, Step step) {
+  const auto end = static_cast<std::size_t>(std::min(last, static_cast<double>(searched)));
   for (;;) {
     double left = stream.uniform();
     double chance = at_zero;
-    for (double k = 0; k <= std::min(last, 200.0); ++k) {
-      if (left <= chance) return k;
+    for (std::size_t k = 0; k <= end; ++k) {
+      if (left <= chance) return static_cast<double>(k);
       left -= chance;
-      chance *= step(k);
+      chance *= step(static_cast<double>(k)) * reciprocals[k + 1];
     }
   }
 }
@@ -84,8 +108,7 @@ double binomial_by_rejection(RandomStream& stream, double n, double p) {
   const double sure = 0.92 - 4.2 / b;
   const double alpha = (2.83 + 5.1 / b) * sd;
   const double mode = std::floor((n + 1) * p);
-  const double at_mode = (mode + 0.5) * portable_log((mode + 1) / (odds * (n - mode + 1))) +
-                         stirling_rest(mode) + stirling_rest(n - mode);
+  double at_mode = 0;  // found when first needed: most draws are accepted without
   for (;;) {
     const double u = stream.uniform() - 0.5;
     const double v = stream.uniform();
@@ -93,6 +116,9 @@ double binomial_by_rejection(RandomStream& stream, double n, double p) {
     const double k = std::floor((2 * a / edge + b) * u + centre);
     if (edge >= 0.07 && v <= sure) return k;
     if (k < 0 || k > n) continue;
+    if (at_mode == 0)
+      at_mode = (mode + 0.5) * portable_log((mode + 1) / (odds * (n - mode + 1))) + stirling_rest(mode) +
+                stirling_rest(n - mode);
     const double bound = at_mode + (n + 1) * portable_log1p((k - mode) / (n - k + 1)) +
                          (k + 0.5) * portable_log(odds * (n - k + 1) / (k + 1)) - stirling_rest(k) -
                          stirling_rest(n - k);
@@ -147,18 +173,18 @@ double draw_gamma(RandomStream& stream, double shape) {
 }
 
 double draw_poisson(RandomStream& stream, double mean) {
-  if (mean >= 10) return poisson_by_rejection(stream, mean);
-  return search_up(stream, portable_exp(-mean), 1000, [mean](double k) { return mean / (k + 1); });
+  if (mean >= search_below) return poisson_by_rejection(stream, mean);
+  return search_up(stream, portable_exp(-mean), searched, [mean](double) { return mean; });
 }
 
 double draw_binomial(RandomStream& stream, double trials, double chance) {
   if (trials == 0 || chance <= 0) return 0;
   if (chance >= 1) return trials;
   if (chance > 0.5) return trials - draw_binomial(stream, trials, 1 - chance);
-  if (trials * chance >= 10) return binomial_by_rejection(stream, trials, chance);
+  if (trials * chance >= search_below) return binomial_by_rejection(stream, trials, chance);
   const double odds = chance / (1 - chance);
-  return search_up(stream, portable_exp(trials * portable_log1p(-chance)), trials,
-                   [odds, trials](double k) { return odds * (trials - k) / (k + 1); });
+  return search_up(stream, power_of_rest(chance, trials), trials,
+                   [odds, trials](double k) { return odds * (trials - k); });
 }
 
 std::vector<double> conditional_chances(std::span<const double> weights) {

@@ -70,7 +70,7 @@ double fit(const std::function<double()>& draw, const std::function<double(doubl
 }
 
 TEST_CASE("Poisson draws follow the Poisson law") {
-  for (const double mean : {0.003, 0.7, 9.99, 10.0, 37.5, 900.0}) {
+  for (const double mean : {0.003, 0.7, 9.99, 24.9, 25.0, 37.5, 900.0}) {
     CAPTURE(mean);
     RandomStream stream(7);
     CHECK(fit([&] { return draw_poisson(stream, mean); },
@@ -81,7 +81,7 @@ TEST_CASE("Poisson draws follow the Poisson law") {
 }
 
 TEST_CASE("binomial draws follow the binomial law") {
-  for (const double trials : {1.0, 5.0, 40.0, 300.0, 20000.0}) {
+  for (const double trials : {1.0, 5.0, 40.0, 300.0, 20000.0, 1e5, 3e5}) {
     for (const double chance : {0.0004, 0.09, 0.26, 0.5, 0.83}) {
       CAPTURE(trials);
       CAPTURE(chance);
