@@ -7,6 +7,8 @@
 
 #include <cmath>
 
+#include "engine/numbers/exact.hpp"
+
 namespace countsel {
 
 struct DoubleDouble {
@@ -16,13 +18,9 @@ struct DoubleDouble {
   DoubleDouble() = default;
   DoubleDouble(double value) : high(value) {}
   DoubleDouble(double h, double l) : high(h), low(l) {}
+  DoubleDouble(const Pair& pair) : high(pair.high), low(pair.low) {}
   double value() const { return high + low; }
 };
-
-inline DoubleDouble two_sum(double a, double b) {
-  const double s = a + b, t = s - a;
-  return {s, (a - (s - t)) + (b - t)};
-}
 
 inline DoubleDouble operator+(const DoubleDouble& a, const DoubleDouble& b) {
   DoubleDouble s = two_sum(a.high, b.high);

@@ -54,7 +54,7 @@ double poisson_saturated(double y) {
 }  // namespace
 
 const Family& poisson_log_family() {
-  static constexpr Family family{"poisson", poisson_step, poisson_fit, poisson_saturated};
+  static constexpr Family family{"poisson", poisson_step, poisson_fit, poisson_saturated, true};
   return family;
 }
 

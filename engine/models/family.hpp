@@ -18,6 +18,9 @@ struct Family {
   void (*fit)(std::size_t rows, const double* count, const double* mean, const double* weight, double* sums);
   /// The log-likelihood of a count at its own mean: what the deviance is measured from.
   double (*saturated)(double count);
+  /// The canonical log link: the deviance between two models of the family then needs only their predictors,
+  /// and all reduced models can share their passes.
+  bool log_canonical;
 };
 
 const Family& poisson_log_family();

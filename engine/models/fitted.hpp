@@ -17,8 +17,9 @@ struct FittedModel {
   RowData data;
   std::vector<double> owned_weight;  ///< where rows are set apart
   const Family* family = nullptr;
-  Eigen::VectorXd gamma;  ///< working coefficients
-  Factor factor;          ///< of the information at them
+  Eigen::VectorXd gamma;    ///< working coefficients
+  Information information;  ///< at them
+  Factor factor;            ///< of that
   double null_log_rate = 0;
   /// Coefficients bound up with others through aliases or infinities, and those of terms that combined
   /// working columns or shifted multipliers lean on: without them the working columns would change.

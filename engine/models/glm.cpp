@@ -193,6 +193,7 @@ GlmFit fit_poisson(const Design& design, const GlmData& data, const Work& work) 
   NewtonResult result = newton(model->layout, model->basis, model->data, family, totals.log_rate, work);
   if (!result.gamma.allFinite()) refuse_not_finite(model->layout);
   model->gamma = std::move(result.gamma);
+  model->information = std::move(result.last.information);
   model->factor = std::move(result.last.factor);
   mark_shifts(*model);
   const Sums& sums = result.last.sums;

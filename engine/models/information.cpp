@@ -140,6 +140,40 @@ VectorXd assemble_score(const Layout& layout, const Basis& basis, const Sums& su
   return score;
 }
 
+VectorXd times(const Information& information, const VectorXd& x) {
+  VectorXd rest(static_cast<Index>(information.rest.size())),
+      absorbed(static_cast<Index>(information.absorbed.size()));
+  for (std::size_t i = 0; i < information.rest.size(); ++i) rest[i] = x[information.rest[i]];
+  for (std::size_t j = 0; j < information.absorbed.size(); ++j) absorbed[j] = x[information.absorbed[j]];
+  const VectorXd rest_out = information.full * rest + information.border * absorbed;
+  const VectorXd absorbed_out =
+      information.border.transpose() * rest + information.diagonal.cwiseProduct(absorbed);
+  VectorXd out = VectorXd::Zero(x.size());
+  for (std::size_t i = 0; i < information.rest.size(); ++i) out[information.rest[i]] = rest_out[i];
+  for (std::size_t j = 0; j < information.absorbed.size(); ++j)
+    out[information.absorbed[j]] = absorbed_out[j];
+  return out;
+}
+
+Information without(const Information& information, const std::vector<char>& dropped) {
+  std::vector<Index> rest, absorbed;
+  Information smaller;
+  for (std::size_t i = 0; i < information.rest.size(); ++i)
+    if (!dropped[information.rest[i]]) {
+      rest.push_back(i);
+      smaller.rest.push_back(information.rest[i]);
+    }
+  for (std::size_t j = 0; j < information.absorbed.size(); ++j)
+    if (!dropped[information.absorbed[j]]) {
+      absorbed.push_back(j);
+      smaller.absorbed.push_back(information.absorbed[j]);
+    }
+  smaller.full = information.full(rest, rest);
+  smaller.border = information.border(rest, absorbed);
+  smaller.diagonal = information.diagonal(absorbed);
+  return smaller;
+}
+
 Factor factorise(const Information& information, std::size_t coefficients, double least) {
   Factor factor;
   factor.rest = information.rest;

@@ -26,6 +26,11 @@ struct Information {
 Information assemble(const Layout& layout, const Basis& basis, const Sums& sums);
 Eigen::VectorXd assemble_score(const Layout& layout, const Basis& basis, const Sums& sums);
 
+/// information * x, over all coefficients.
+Eigen::VectorXd times(const Information& information, const Eigen::VectorXd& x);
+/// The information of the model without some coefficients.
+Information without(const Information& information, const std::vector<char>& dropped);
+
 struct Factor {
   std::vector<std::size_t> rest, absorbed;
   std::size_t coefficients = 0;

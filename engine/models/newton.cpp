@@ -14,6 +14,7 @@ using Eigen::Index;
 using Eigen::VectorXd;
 
 constexpr int most_passes = 80;
+constexpr std::size_t cheap_rows = 20000;
 
 /// A pull towards 0, worth one event a coefficient: in a sample, levels may have no events.
 void add_pull(Information& information) {
@@ -78,7 +79,7 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
   bool whole_before = false;
   for (result.passes = 1; result.passes <= most_passes; ++result.passes) {
     // The fit is measured where this pass is likely to be the last that matters.
-    request.fit = data.rows < 4096 || (whole_before && step_before < 1e-2);
+    request.fit = data.rows >= cheap_rows && whole_before && step_before < 1e-2;
     const std::size_t combined_before = basis.combined.size();
     result.last = settle(layout, basis, data, family, result.gamma, request, work);
     const VectorXd score = assemble_score(layout, basis, result.last.sums);
@@ -112,7 +113,7 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     // A whole step leaves about bend * length^2: known once two whole steps in a row have been seen.
     const double bend =
         whole_before && step_before > 0 ? std::max(1e-3 * length, length / (step_before * step_before)) : 1;
-    const bool small_rest = bend * length * length < 1e-12 && bend * length < 1e-8;
+    const bool small_rest = bend * length * length < 1e-13 && bend * length < 1e-10;
     const bool stalled = whole_before && length < 1e-7 && length > 0.3 * step_before;
     if (small_rest || length < 1e-10 || stalled) {
       result.converged = true;
@@ -122,7 +123,8 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     whole_before = true;
   }
   if (!result.converged && step.size() > 0) result.worst = most_moved(result.last.factor, step);
-  if (!request.fit || !result.converged || result.last_step > 1e-5) {
+  // Errors and fit at the estimate itself: on few rows always, else where the last pass was not near enough.
+  if (data.rows < cheap_rows || !request.fit || !result.converged || result.last_step > 1e-5) {
     request.fit = true;
     result.last = settle(layout, basis, data, family, result.gamma, request, work);
     ++result.passes;
