@@ -26,12 +26,9 @@ double negative_binomial_upper_quantile(double q, double shape, double mean);
 /// whole, 0 or more.
 double digamma_rise(double a, double k);
 
-/// The log chance of y and its slopes in log mean and in `spread` = 1 / shape. At spread 0 the latter is
-/// its limit ((y - mean)^2 - y) / 2, the score of a Poisson count against more spread.
-struct CountSlopes {
-  double loglik, by_log_mean, by_spread;
-};
-/// spread >= 0, mean > 0. Accuracy: slopes to 12 digits of their largest part.
-CountSlopes negative_binomial_slopes(double y, double spread, double mean);
+/// Slope of the log chance of y in `spread` = 1 / shape. At spread 0 it is its limit ((y - mean)^2 - y) / 2,
+/// the score of a Poisson count against more spread. spread >= 0, mean > 0. Accuracy: 12 digits of its
+/// largest part.
+double negative_binomial_spread_slope(double y, double spread, double mean);
 
 }  // namespace countsel

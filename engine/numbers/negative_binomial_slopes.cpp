@@ -51,12 +51,10 @@ double digamma_rise(double a, double k) {
   return total + std::log1p((k - from) / x) + step * by_step;
 }
 
-CountSlopes negative_binomial_slopes(double y, double spread, double mean) {
-  const double shape = 1 / spread, whole = 1 + spread * mean;
+double negative_binomial_spread_slope(double y, double spread, double mean) {
   const double x = spread * mean;
   const double gap = x == 0 ? mean * mean / 2 : log1p_gap(x) / (spread * spread);
-  return {negative_binomial_log_exactly(y, shape, mean), (y - mean) / whole,
-          damped_sum(y, spread) - gap + (mean - y) * mean / whole};
+  return damped_sum(y, spread) - gap + (mean - y) * (mean / (1 + x));
 }
 
 }  // namespace countsel
