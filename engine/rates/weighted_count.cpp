@@ -122,6 +122,7 @@ Limits gamma_ratio_limits(const WeightedCount& above, const WeightedCount& below
 
 double gamma_ratio_test(const WeightedCount& numerator, const WeightedCount& denominator, bool mid_p,
                         Direction direction, double null_ratio) {
+  if (numerator.value == 0 && denominator.value == 0) return 1;
   const auto [low, high] = laws(numerator, denominator);
   double p_above = below(low, null_ratio), p_below = above(high, null_ratio);
   if (mid_p) {

@@ -33,7 +33,8 @@ Limits gamma_limits(const WeightedCount& sum, bool mid_p, double confidence, Sid
 Limits gamma_ratio_limits(const WeightedCount& above, const WeightedCount& below, bool mid_p,
                           double confidence, Side side);
 
-/// P-value of the hypothesis that the ratio is `null_ratio`; agrees with gamma_ratio_limits.
+/// P-value of the hypothesis that the ratio is `null_ratio`; agrees with gamma_ratio_limits. Both values
+/// 0: 1.
 double gamma_ratio_test(const WeightedCount& above, const WeightedCount& below, bool mid_p,
                         Direction direction, double null_ratio = 1);
 
