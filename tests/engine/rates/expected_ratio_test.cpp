@@ -70,7 +70,6 @@ TEST_CASE("limits and tests agree over a grid") {
       for (const double confidence : {0.5, 0.9, 0.99}) {
         CAPTURE(count);
         CAPTURE(confidence);
-        CAPTURE(static_cast<int>(test));
         const auto r = count_over_expected(count, 10, spec_of(limits, test, confidence));
         const double alpha = 1 - confidence;
         // At the limit itself the two-sided p-value is alpha.
