@@ -14,12 +14,6 @@ constexpr double infinity = std::numeric_limits<double>::infinity();
 constexpr double two_pi = 6.2831853071795864769;
 constexpr double half_log_two_pi = 0.91893853320467274178;
 
-// ratio - 1 - log(ratio), given ratio - 1 without its rounding as well: near 1 the one carries the digits,
-// near 0 the other.
-double ratio_gap(double ratio, double less_one) {
-  return ratio > 0.4 && ratio < 2.2 ? log1p_gap(less_one) : less_one - std::log(ratio);
-}
-
 // Gauss-Legendre, 16 points: abscissa and weight of the positive half.
 constexpr double gauss[8][2] = {
     {0.09501250983763744019, 0.1894506104550684963}, {0.2816035507792589132, 0.1826034150449235889},
@@ -105,6 +99,12 @@ double log1p_gap(double u) {
   const int terms = q < 1e-5 ? 3 : q < 5e-4 ? 5 : q < 0.02 ? 10 : 24;
   for (int n = terms; n >= 1; --n) series = series * q + odd[n];
   return r * (u - 2 * q * series);
+}
+
+// Near 1 the difference carries the digits, near 0 and far above the ratio does.
+double ratio_gap(double ratio, double less_one) {
+  if (ratio > 0.4 && ratio < 2.2) return log1p_gap(less_one);
+  return std::isinf(ratio) ? ratio : less_one - std::log(ratio);
 }
 
 double stirling_error(double a) {

@@ -15,6 +15,10 @@ namespace countsel {
 /// u - log(1 + u) for u > -1, to a few units in the last place also near 0.
 double log1p_gap(double u);
 
+/// ratio - 1 - log(ratio) for ratio > 0, given ratio - 1 without its rounding as well: a deviance over its
+/// count.
+double ratio_gap(double ratio, double less_one);
+
 /// log Gamma(a + 1) less Stirling's (a + 1/2) log a - a + log sqrt(2 pi), a > 0; absolute error 1e-15.
 double stirling_error(double a);
 

@@ -110,20 +110,26 @@ def ends(method, count, tail):
     raise ValueError(method)
 
 
-METHODS = ["exact", "mid_p", "score", "likelihood", "jeffreys", "byar", "wald", "log_wald", "square_root", "event", "bayes"]
+METHODS = "exact mid_p score likelihood jeffreys byar wald log_wald square_root event bayes".split()
 
-with open(HERE / "limits.tsv", "w", encoding="utf-8") as out:
-    out.write("# Limits for one rate, exposure 1 (bayes: exposure 60, prior shape 2.5 and rate 40).\n")
-    out.write(f"# Made by limits.py: mpmath {mpmath.__version__} at {mp.dps} digits, written to 20.\n")
-    out.write("case\tsource\tinputs\texpected\ttolerance\n")
-    for method in METHODS:
-        for count in COUNTS:
-            if count == 0 and method in ("log_wald", "event"):
-                continue
-            for level in LEVELS:
-                tail = (1 - mpf(level)) / 2
-                low, high = ends(method, count, tail)
-                out.write(
-                    f"{method}\tlimits.py\tcount={count} confidence={level!r}\t"
-                    f"low={mp.nstr(low, 20)} high={mp.nstr(high, 20)}\tr1e-12\n"
-                )
+
+def main():
+    with open(HERE / "limits.tsv", "w", encoding="utf-8") as out:
+        out.write("# Limits for one rate, exposure 1 (bayes: exposure 60, prior shape 2.5 and rate 40).\n")
+        out.write(f"# Made by limits.py: mpmath {mpmath.__version__} at {mp.dps} digits, written to 20.\n")
+        out.write("case\tsource\tinputs\texpected\ttolerance\n")
+        for method in METHODS:
+            for count in COUNTS:
+                if count == 0 and method in ("log_wald", "event"):
+                    continue
+                for level in LEVELS:
+                    tail = (1 - mpf(level)) / 2
+                    low, high = ends(method, count, tail)
+                    out.write(
+                        f"{method}\tlimits.py\tcount={count} confidence={level!r}\t"
+                        f"low={mp.nstr(low, 20)} high={mp.nstr(high, 20)}\tr1e-12\n"
+                    )
+
+
+if __name__ == "__main__":
+    main()
