@@ -16,7 +16,7 @@
 namespace countsel {
 namespace {
 
-constexpr double most_summed = 1e8;
+constexpr double most_summed = 2e7;
 
 // The chances of a Poisson's values in a stretch from `first` on, and of reaching each at least.
 struct Stretch {
