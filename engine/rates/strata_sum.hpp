@@ -8,7 +8,8 @@
 // with K(p, d) = log(1 + p (e^d - 1)) - p d, so that both tails are sums of p(k) near a with weights at most
 // 1: relative accuracy holds in the far tails, and nothing grows with the number of events.
 // Source: exponential tilting as in Daniels 1954; Fourier inversion on a circle through the saddlepoint.
-// Checked by: tests/engine/rates/strata_sum_test.cpp (enumeration), tests/reference/rates/strata.tsv (mpmath).
+// Checked by: tests/engine/rates/strata_sum_test.cpp (enumeration), tests/reference/rates/strata.tsv
+// (mpmath).
 #pragma once
 
 #include <span>
