@@ -5,6 +5,7 @@
 #include <ostream>
 
 #include "protocol/catalogue.hpp"
+#include "protocol/cli/fold.hpp"
 #include "protocol/declare/decode.hpp"
 #include "protocol/declare/describe.hpp"
 #include "protocol/declare/nearest.hpp"
@@ -12,33 +13,12 @@
 namespace countsel {
 namespace {
 
-/// Words wrapped to `width`, later lines indented.
-std::string wrapped(const std::string& text, std::size_t indent, std::size_t width = 79) {
-  std::string out;
-  std::size_t column = indent;
-  for (std::size_t from = 0; from < text.size();) {
-    const auto space = std::min(text.find(' ', from), text.size());
-    const std::string word = text.substr(from, space - from);
-    if (column > indent && column + 1 + word.size() > width) {
-      out += "\n" + std::string(indent, ' ');
-      column = indent;
-    } else if (column > indent) {
-      out += ' ';
-      ++column;
-    }
-    out += word;
-    column += word.size();
-    from = space + 1;
-  }
-  return out;
-}
-
 void entry(std::ostream& out, const std::string& name, const std::string& text) {
   constexpr std::size_t indent = 20;
   out << "  " << name;
   out << (name.size() + 2 < indent ? std::string(indent - name.size() - 2, ' ')
                                    : "\n" + std::string(indent, ' '));
-  out << wrapped(text, indent) << "\n";
+  out << folded(text, indent) << "\n";
 }
 
 void explain(std::ostream& out, const Question& question) {
@@ -67,12 +47,12 @@ void explain(std::ostream& out, const Question& question) {
     out << "\nTable " << table.name << ": " << table.doc << "\n  ";
     std::string columns;
     for (const auto& column : table.columns) columns += (columns.empty() ? "" : ", ") + column.name;
-    out << wrapped(columns, 2) << "\n";
+    out << folded(columns, 2) << "\n";
   }
   if (!question.sources.empty()) {
     out << "\nMethods\n";
     for (const auto& source : question.sources)
-      out << "  " << wrapped(source.name + ": " + source.publication, 4) << "\n";
+      out << "  " << folded(source.name + ": " + source.publication, 4) << "\n";
   }
   if (!question.examples.empty()) {
     out << "\nExample\n  " << question.examples.front() << "\n";

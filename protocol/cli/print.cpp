@@ -7,39 +7,12 @@
 #include <string>
 #include <vector>
 
-#include "protocol/wording/shown.hpp"
+#include "protocol/cli/fold.hpp"
 
 namespace countsel {
 namespace {
 
 constexpr std::size_t most_rows = 60;
-
-/// Characters seen: bytes that do not continue a UTF-8 sequence.
-std::size_t seen_width(const std::string& text) {
-  return static_cast<std::size_t>(std::count_if(
-      text.begin(), text.end(), [](char c) { return (static_cast<unsigned char>(c) & 0xC0U) != 0x80U; }));
-}
-
-std::string folded(const std::string& text, std::size_t indent) {
-  constexpr std::size_t width = 96;
-  std::string out;
-  std::size_t column = indent;
-  for (std::size_t from = 0; from < text.size();) {
-    const auto space = std::min(text.find(' ', from), text.size());
-    const std::string word = text.substr(from, space - from);
-    if (column > indent && column + 1 + seen_width(word) > width) {
-      out += "\n" + std::string(indent, ' ');
-      column = indent;
-    } else if (column > indent) {
-      out += ' ';
-      ++column;
-    }
-    out += word;
-    column += seen_width(word);
-    from = space + 1;
-  }
-  return out;
-}
 
 void print_table(std::ostream& out, const Json& shown, const Json& heads, const Json& cells) {
   struct Column {
