@@ -2,7 +2,6 @@
 #include "engine/rates/checks.hpp"
 
 #include <charconv>
-#include <cmath>
 #include <string>
 
 #include "engine/refusal.hpp"
@@ -25,9 +24,6 @@ std::string whose(std::string_view name, std::size_t row) {
 }
 
 }  // namespace
-
-bool is_count(double count) { return count >= 0 && std::isfinite(count) && count == std::floor(count); }
-bool is_exposure(double exposure) { return exposure > 0 && std::isfinite(exposure); }
 
 void require_count(double count, std::string_view name, std::size_t row) {
   if (!is_count(count)) refuse(Code::bad_count, name, row, count, "a count is a whole number, 0 or more.");

@@ -5,6 +5,8 @@
 #pragma once
 
 #include <cstddef>
+#include <cstdint>
+#include <limits>
 #include <string_view>
 
 namespace countsel {
@@ -18,8 +20,14 @@ void require_probability(double value, std::string_view name);
 /// Refuses bad_value unless value is above 0 and finite.
 void require_positive(double value, std::string_view name);
 
-/// Is this a count, is this an exposure: the same conditions, for loops over rows.
-bool is_count(double count);
-bool is_exposure(double exposure);
+/// Is this a count, is this an exposure: the same conditions, for loops over rows. From 2^53 on every double
+/// is whole.
+inline bool is_count(double count) {
+  if (!(count < 9007199254740992.0)) return count < std::numeric_limits<double>::infinity();
+  return count >= 0 && static_cast<double>(static_cast<std::int64_t>(count)) == count;
+}
+inline bool is_exposure(double exposure) {
+  return exposure > 0 && exposure < std::numeric_limits<double>::infinity();
+}
 
 }  // namespace countsel
