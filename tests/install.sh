@@ -8,7 +8,7 @@ set -eu
 build="g++ cmake ninja-build libeigen3-dev libboost-dev libboost-math-dev nlohmann-json3-dev doctest-dev
   libcli11-dev libcsv-dev libxxhash-dev python3"
 test="clang clang-format git python3-scipy python3-statsmodels python3-mpmath python3-sklearn
-  python3-pandas python3-matplotlib"
+  python3-pandas python3-matplotlib python3-ipykernel python3-nbclient"
 
 case ${1:-} in
   build) wanted=$build ;;

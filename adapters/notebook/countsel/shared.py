@@ -1,0 +1,33 @@
+# adapters/notebook/countsel/shared.py -- the one engine that the module's functions ask.
+import difflib
+import threading
+
+from .catalogue import function_of
+from .engine import Engine
+
+METHODS = ("ask", "hold", "quick", "release")
+
+_lock = threading.Lock()
+_engine = None
+
+
+def engine():
+    """The shared engine, started when it is first needed. Raises EngineMissing, EngineDied."""
+    global _engine
+    with _lock:
+        if _engine is None:
+            _engine = Engine()
+        return _engine
+
+
+def functions():
+    """{name: function} for the module: each question, and what else an engine does with tables and lines."""
+    asked = engine()
+    made = {name: getattr(asked, name) for name in METHODS}
+    return made | {name: function_of(asked.catalogue[name], asked._answer) for name in asked.asks()}
+
+
+def near(name):
+    """A hint at the question meant, where there is one."""
+    close = difflib.get_close_matches(name, _engine.asks(), 1) if _engine else []
+    return f"; did you mean {close[0]}?" if close else ""
