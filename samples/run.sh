@@ -7,6 +7,8 @@
 set -eu
 cd "$(dirname "$0")/.."
 
+words=event=burst,events=bursts,exposure=km-years
+
 say() { printf '\n== %s\n' "$*"; }
 
 # Shows a command as it could be typed, then runs it.
@@ -34,15 +36,17 @@ else
 fi
 
 say "How often do mains burst, by material?"
-show ask how_often per=100 --roles count=bursts,exposure=km_years,group=material samples/mains.csv
+show ask how_often samples/mains.csv per=100 --words "$words" \
+  --roles count=bursts,exposure=km_years,group=material
 
 say "Does cast iron burst more than PVC?"
-echo "(only the rows of these two: awk -F, 'NR == 1 || \$2 ~ /^(cast iron|pvc)\$/' samples/mains.csv |)"
-awk -F, 'NR == 1 || $2 ~ /^(cast iron|pvc)$/' samples/mains.csv |
-  show ask which_higher reference=pvc per=100 --roles count=bursts,exposure=km_years,group=material -
+show ask which_higher samples/mains.csv reference=pvc per=100 --words "$words" \
+  --roles count=bursts,exposure=km_years,group=material \
+  --only "material=cast iron" --only material=pvc
 
 say "What drives bursts, other things held fixed?"
-show ask what_drives errors=scaled --roles count=bursts,exposure=km_years samples/mains.csv
+show ask what_drives samples/mains.csv reference=material=pvc errors=scaled --words "$words" \
+  --roles count=bursts,exposure=km_years
 
 say "The same, and more, as a program asks: countsel --files samples < samples/requests.jsonl"
 "$engine" --files samples < samples/requests.jsonl
