@@ -1,5 +1,7 @@
 // protocol/services/hold.cpp -- tables kept between requests: hold, held, release.
 #include <algorithm>
+#include <limits>
+#include <unordered_set>
 
 #include "protocol/declare/nearest.hpp"
 #include "protocol/services/held_tables.hpp"
@@ -20,14 +22,14 @@ std::string kind_of(const Column& column) {
   return numbers && texts ? "numbers and texts" : numbers ? "numbers" : texts ? "levels" : "blank";
 }
 
-std::vector<double> distinct(const std::vector<double>& numbers) {
-  std::vector<double> sorted;
+/// Distinct numbers, or NaN beyond 1,000: then it is no set of levels and the count is worth no time.
+double distinct_numbers(const std::vector<double>& numbers) {
+  std::unordered_set<double> seen;
   for (const double value : numbers) {
-    if (value == value) sorted.push_back(value);
+    if (value == value) seen.insert(value);
+    if (seen.size() > 1000) return std::numeric_limits<double>::quiet_NaN();
   }
-  std::sort(sorted.begin(), sorted.end());
-  sorted.erase(std::unique(sorted.begin(), sorted.end()), sorted.end());
-  return sorted;
+  return static_cast<double>(seen.size());
 }
 
 void require_name(const Named& asked, const char* question) {
@@ -118,7 +120,7 @@ OutTable columns_table(const Table& table) {
     names.push_back(column->name);
     kinds.push_back(kind_of(*column));
     rows.push_back(static_cast<double>(column->size()));
-    levels.push_back(static_cast<double>(distinct(column->numbers).size() + column->texts.size()));
+    levels.push_back(distinct_numbers(column->numbers) + static_cast<double>(column->texts.size()));
     blanks.push_back(static_cast<double>(std::count(column->tags.begin(), column->tags.end(), tag::blank)));
   }
   return {"columns",

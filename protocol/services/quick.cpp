@@ -53,6 +53,13 @@ std::string said_back(const SpokenPair& pair, const std::string& events, const s
   return text;
 }
 
+/// A whole number without a point, so that the request reads as a person would write it.
+Json plain(double value) {
+  if (value == std::trunc(value) && std::abs(value) < 9007199254740992.0)
+    return Json(static_cast<std::int64_t>(value));
+  return Json(value);
+}
+
 Answer answer(const Quick&, Context&) {
   throw std::logic_error("a quick line is answered by what it was read as");
 }
@@ -85,21 +92,21 @@ const Question& read_quick(Request& request) {
   std::string sentence = said_back(line.first, events, unit);
   if (second) {
     read["ask"] = "which_higher";
-    of["count"] = {line.first.count, second->count};
+    of["count"] = {plain(line.first.count), plain(second->count)};
     if (!line.first.exposure) {
       throw Refusal(Code::bad_value, "Two counts cannot be compared without what was observed for each.", {},
                     "Say it like \"14 in 2,300 vs 5 in 2,100\".");
     }
-    of["exposure"] = {*line.first.exposure, *second->exposure};
-    of["group"] = {"first", "second"};
-    with["reference"] = "second";
+    of["exposure"] = {plain(*line.first.exposure), plain(*second->exposure)};
+    of["group"] = {"the first", "the second"};
+    with["reference"] = "the second";
     sentence += " vs " + said_back(*second, events, unit);
   } else {
     read["ask"] = line.target_rate ? "on_target" : "how_often";
-    of["count"] = line.first.count;
-    if (line.first.exposure) of["exposure"] = *line.first.exposure;
+    of["count"] = plain(line.first.count);
+    if (line.first.exposure) of["exposure"] = plain(*line.first.exposure);
     if (line.target_rate) {
-      with["target_rate"] = *line.target_rate;
+      with["target_rate"] = plain(*line.target_rate);
       sentence += " against " + given_text(*line.target_rate);
     }
   }
@@ -109,7 +116,7 @@ const Question& read_quick(Request& request) {
                   "Say it like \"14 in 2,300 vs 5 in 2,100\".");
   }
   if (line.first.exposure || line.per) {
-    with["per"] = per;
+    with["per"] = plain(per);
     sentence += (line.target_rate ? " per " : ", per ") + given_text(per) + (unit.empty() ? "" : " " + unit);
   }
   const double confidence = line.confidence.value_or(0.95);
@@ -128,7 +135,7 @@ const Question& read_quick(Request& request) {
   inner.progress = request.progress;
   inner.within_s = request.within_s;
   inner.read_as = {{"read_as", std::move(read)}, {"sentence", std::move(sentence)}};
-  if (!line.per && line.first.exposure) inner.read_as["base_chosen"] = per;
+  if (!line.per && line.first.exposure) inner.read_as["base_chosen"] = plain(per);
   request = std::move(inner);
   return *question;
 }

@@ -27,10 +27,11 @@ std::string say_comparison(const Wording& wording, const SaidComparison& said) {
   const auto rate = [&](double count, double exposure) {
     return significant_text(count / exposure * said.per, 2);
   };
-  std::string text = said.first + ": " + wording.counted(d.count1) + " in " + wording.observed(d.exposure1) +
-                     " (" + rate(d.count1, d.exposure1) + " " + wording.rate_unit() + "); " + said.reference +
-                     ": " + wording.counted(d.count0) + " in " + wording.observed(d.exposure0) + " (" +
-                     rate(d.count0, d.exposure0) + ")" + wording.period() + ".";
+  std::string text = capital(said.first) + ": " + wording.counted(d.count1) + " in " +
+                     wording.observed(d.exposure1) + " (" + rate(d.count1, d.exposure1) + " " +
+                     wording.rate_unit() + "); " + said.reference + ": " + wording.counted(d.count0) +
+                     " in " + wording.observed(d.exposure0) + " (" + rate(d.count0, d.exposure0) + ")" +
+                     wording.period() + ".";
   if (d.count1 == 0 && d.count0 == 0) {
     return text + " Nothing happened in either group, so nothing can be said about which is higher.";
   }
