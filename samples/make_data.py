@@ -80,7 +80,7 @@ class Chance:
         return low + int(self.uniform() * (high - low + 1))
 
     def waiting_time(self):
-        """Exponential, mean 1: a falling run of uniforms that starts at x has odd length with chance exp(-x)."""
+        """Exponential, mean 1: a falling run of uniforms from x has odd length with chance exp(-x)."""
         whole = 0
         while True:
             first = last = self.uniform()

@@ -45,8 +45,8 @@ show ask which_higher samples/mains.csv reference=pvc per=100 --words "$words" \
   --only "material=cast iron" --only material=pvc
 
 say "What drives bursts, other things held fixed?"
-show ask what_drives samples/mains.csv reference=material=pvc errors=scaled --words "$words" \
-  --roles count=bursts,exposure=km_years
+show ask what_drives samples/mains.csv terms=material,age,diameter,soil,pressure,zone \
+  reference=material=pvc errors=scaled --words "$words" --roles count=bursts,exposure=km_years
 
 say "The same, and more, as a program asks: countsel --files samples < samples/requests.jsonl"
 "$engine" --files samples < samples/requests.jsonl

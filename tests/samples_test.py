@@ -134,13 +134,16 @@ class Requests(unittest.TestCase):
 
     def test_rates_of_the_wards(self):
         answer = self.answer("falls by ward")
-        self.check_rates(answer["tables"]["rates"], totals(rows("wards.csv"), "ward", "falls", "bed_days"), 1000, 0.95)
+        sums = totals(rows("wards.csv"), "ward", "falls", "bed_days")
+        self.check_rates(answer["tables"]["rates"], sums, 1000, 0.95)
         self.assertEqual(set(answer) & {"figures", "picture", "shown"}, set())
 
     def test_only_keeps_one_year(self):
         table = self.answer("this year by zone")["tables"]["rates"]
-        sums = totals([row for row in rows("mains.csv") if row["year"] == "2024"], "zone", "bursts", "km_years")
-        self.assertEqual(dict(zip(table["label"], table["count"])), {zone: n for zone, (n, _) in sums.items()})
+        kept = [row for row in rows("mains.csv") if row["year"] == "2024"]
+        sums = totals(kept, "zone", "bursts", "km_years")
+        self.assertEqual(table["label"], list(sums))
+        self.assertEqual(table["count"], [events for events, _ in sums.values()])
         self.assertIn("shown", self.answer("this year by zone"))
 
     def test_none_seen_has_an_upper_limit(self):
@@ -169,14 +172,14 @@ class Requests(unittest.TestCase):
         ratios = pandas.DataFrame(answer["tables"]["ratios"])
         levels = ratios[ratios.level.notna() & ratios.low.notna()]
         for term, level in zip(levels.term, levels.level):
-            columns[term, level] = (table[term].astype(str) == level).astype(float)
+            columns[f"{term} {level}"] = (table[term].astype(str) == level).astype(float)
         self.assertEqual(len(columns), 3 + 4 + 2 + 5 + 7)
         design = sm.add_constant(pandas.DataFrame(columns))
-        fit = sm.GLM(table.bursts, design, family=sm.families.Poisson(), exposure=table.km_years)
+        fit = sm.GLM(table.bursts, design, family=sm.families.Poisson(), exposure=table.km_years.to_numpy())
         fit = fit.fit(scale="X2", tol=1e-13)
         self.assertEqual(ratios.term[0], "baseline")
         for row in ratios[ratios.low.notna()].itertuples():
-            name = (row.term, row.level) if row.level is not None else row.term
+            name = row.term if row.level is None else f"{row.term} {row.level}"
             name = "const" if row.Index == 0 else name
             with self.subTest(name):
                 self.assertAlmostEqual(row.log_ratio, fit.params[name], places=8)
