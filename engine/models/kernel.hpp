@@ -54,11 +54,18 @@ struct Kernel {
   /// e(r, m) += sum over j of z(r, j) * gamma(j, m).
   void (*multiply)(std::size_t rows, std::size_t stride, const double* z, std::size_t width,
                    const double* gamma, double* e);
+  /// e(r, m) += table(code[r], m) * multiplier[r]; table rows of `width`; `multiplier` may be null for 1
+  /// each.
+  void (*add_levels)(std::size_t rows, std::size_t width, const std::int32_t* code, const double* multiplier,
+                     const double* table, double* e);
   /// excess[m] += sum over r of information[r] (exp(e) - 1 - e), then e(r, m) = information[r] (exp(e) - 1).
   void (*excess)(std::size_t rows, std::size_t width, const double* information, double* e, double* excess);
   /// gradient(j, m) += sum over r of z(r, j) e(r, m).
   void (*multiply_back)(std::size_t rows, std::size_t stride, const double* z, std::size_t width,
                         const double* e, double* gradient);
+  /// table(code[r], m) += e(r, m) * multiplier[r]; `multiplier` may be null for 1 each.
+  void (*scatter_levels)(std::size_t rows, std::size_t width, const std::int32_t* code,
+                         const double* multiplier, const double* e, double* table);
 };
 
 const Kernel& generic_kernel();

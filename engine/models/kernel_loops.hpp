@@ -284,9 +284,28 @@ void multiply_back(std::size_t rows, std::size_t stride, const double* z, std::s
     }
 }
 
+void add_levels(std::size_t rows, std::size_t width, const std::int32_t* code, const double* multiplier,
+                const double* table, double* e) {
+  for (std::size_t r = 0; r < rows; ++r) {
+    const double* from = table + static_cast<std::size_t>(code[r]) * width;
+    const double by = multiplier ? multiplier[r] : 1.0;
+    for (std::size_t m = 0; m < width; m += lanes)
+      store(e + r * width + m, load(e + r * width + m) + load(from + m) * by);
+  }
+}
+
+void scatter_levels(std::size_t rows, std::size_t width, const std::int32_t* code, const double* multiplier,
+                    const double* e, double* table) {
+  for (std::size_t r = 0; r < rows; ++r) {
+    double* to = table + static_cast<std::size_t>(code[r]) * width;
+    const double by = multiplier ? multiplier[r] : 1.0;
+    for (std::size_t m = 0; m < width; m += lanes) store(to + m, load(to + m) + load(e + r * width + m) * by);
+  }
+}
+
 constexpr Kernel loops(const char* name) {
-  return {name,  fill,    exponential, poisson_log, poisson_fit,  gradient,
-          cross, scatter, multiply,    excess,      multiply_back};
+  return {name,    fill,     exponential, poisson_log, poisson_fit,   gradient,      cross,
+          scatter, multiply, add_levels,  excess,      multiply_back, scatter_levels};
 }
 
 }  // namespace

@@ -23,31 +23,45 @@ void add_pull(Information& information) {
   information.diagonal.array() += 1;
 }
 
-VectorXd sample_fit(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
-                    PassRequest request, const Work& work) {
-  VectorXd gamma = VectorXd::Zero(static_cast<Index>(layout.coefficients));
-  const bool small = request.every == 1;
-  for (int round = 0; round < (small ? 1 : 4); ++round) {
-    request.aim = round == 0 ? Aim::start : Aim::step;
-    const Sums sums = run_pass(layout, basis, data, family, gamma, request, work);
-    Information information = assemble(layout, basis, sums);
-    VectorXd score = assemble_score(layout, basis, sums);
-    if (!small) {
-      add_pull(information);
-      score.tail(score.size() - 1) -= gamma.tail(gamma.size() - 1);
-    }
-    const VectorXd step = solve(factorise(information, layout.coefficients, doubtful_share), score);
-    if (!step.allFinite()) break;
-    gamma += step;
-    if (round > 0 && score.dot(step) < 1e-2) break;
-  }
-  return gamma;
-}
-
-std::size_t sampling_step(std::size_t rows) {
+/// How far apart the blocks of a sample lie: about `share` of the rows, and never few.
+std::size_t sampling_step(std::size_t rows, std::size_t parts) {
   constexpr std::size_t least_rows = 8192;
   if (rows < 4 * least_rows) return 1;
-  return rows / std::max(least_rows, rows / 20);
+  return rows / std::max(least_rows, rows / parts);
+}
+
+struct SampleFit {
+  VectorXd gamma;
+  Factor factor;     ///< of the last sample's information
+  double share = 1;  ///< of the rows
+};
+
+/// Newton on a fortieth of the rows, then on more; on few rows one step from the counts themselves. What the
+/// last sample costs saves a pass over all rows.
+SampleFit sample_fit(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
+                     PassRequest request, const Work& work) {
+  SampleFit fit{VectorXd::Zero(static_cast<Index>(layout.coefficients)), {}, 1};
+  const std::size_t coarse = sampling_step(data.rows, 40), fine = sampling_step(data.rows, 10),
+                    finest = sampling_step(data.rows, 5);
+  std::vector<std::size_t> rounds{coarse};
+  if (coarse > 1) rounds = {coarse, coarse, coarse, fine, finest};
+  for (std::size_t round = 0; round < rounds.size(); ++round) {
+    request.aim = round == 0 ? Aim::start : Aim::step;
+    request.every = rounds[round];
+    const Sums sums = run_pass(layout, basis, data, family, fit.gamma, request, work);
+    Information information = assemble(layout, basis, sums);
+    VectorXd score = assemble_score(layout, basis, sums);
+    if (request.every > 1) {
+      add_pull(information);
+      score.tail(score.size() - 1) -= fit.gamma.tail(fit.gamma.size() - 1);
+    }
+    fit.factor = factorise(information, layout.coefficients, doubtful_share);
+    fit.share = 1.0 / static_cast<double>(request.every);
+    const VectorXd step = solve(fit.factor, score);
+    if (!step.allFinite()) break;
+    fit.gamma += step;
+  }
+  return fit;
 }
 
 /// The coefficient that a step moves most, in its own standard errors.
@@ -68,18 +82,28 @@ std::size_t most_moved(const Factor& factor, const VectorXd& step) {
 NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
                     double null_log_rate, const Work& work) {
   NewtonResult result;
+
   PassRequest request;
   request.null_log_rate = null_log_rate;
-  request.every = sampling_step(data.rows);
-  result.gamma = sample_fit(layout, basis, data, family, request, work);
-  request.every = 1;
+  const SampleFit sample = sample_fit(layout, basis, data, family, request, work);
+  result.gamma = sample.gamma;
+  int passes_before = 0;
+  if (sample.share < 1) {
+    // The sample's information is good enough for a first step on all rows, which then needs scores alone.
+    request.cross = false;
+    const Sums sums = run_pass(layout, basis, data, family, result.gamma, request, work);
+    const VectorXd first = solve(sample.factor, assemble_score(layout, basis, sums)) * sample.share;
+    if (first.allFinite()) result.gamma += first;
+    request.cross = true;
+    passes_before = 1;
+  }
 
   VectorXd start = result.gamma, step;
   double rise_before = 0, share = 0, step_before = 0;
   bool whole_before = false;
   for (result.passes = 1; result.passes <= most_passes; ++result.passes) {
     // The fit is measured where this pass is likely to be the last that matters.
-    request.fit = data.rows >= cheap_rows && whole_before && step_before < 1e-2;
+    request.fit = data.rows >= cheap_rows && whole_before && (result.passes >= 2 || step_before < 1e-2);
     const std::size_t combined_before = basis.combined.size();
     result.last = settle(layout, basis, data, family, result.gamma, request, work);
     const VectorXd score = assemble_score(layout, basis, result.last.sums);
@@ -113,7 +137,7 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     // A whole step leaves about bend * length^2: known once two whole steps in a row have been seen.
     const double bend =
         whole_before && step_before > 0 ? std::max(1e-3 * length, length / (step_before * step_before)) : 1;
-    const bool small_rest = bend * length * length < 1e-13 && bend * length < 1e-10;
+    const bool small_rest = bend * length * length < 1e-11 && bend * length < 1e-7;
     const bool stalled = whole_before && length < 1e-7 && length > 0.3 * step_before;
     if (small_rest || length < 1e-10 || stalled) {
       result.converged = true;
@@ -122,9 +146,10 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     step_before = length;
     whole_before = true;
   }
+  result.passes += passes_before;
   if (!result.converged && step.size() > 0) result.worst = most_moved(result.last.factor, step);
   // Errors and fit at the estimate itself: on few rows always, else where the last pass was not near enough.
-  if (data.rows < cheap_rows || !request.fit || !result.converged || result.last_step > 1e-5) {
+  if (data.rows < cheap_rows || !request.fit || !result.converged || result.last_step > 1e-3) {
     request.fit = true;
     result.last = settle(layout, basis, data, family, result.gamma, request, work);
     ++result.passes;

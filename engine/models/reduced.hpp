@@ -16,7 +16,8 @@ namespace countsel {
 
 /// The deviance lost by each smaller model; none where the passes did not settle it.
 ///   dropped  of each model, one flag a coefficient
-///   accuracy relative, of each loss
+///   accuracy share of its loss that a model may still have to gain; about a tenth of that is the loss's
+///   error
 std::vector<std::optional<double>> deviance_lost(const FittedModel& model,
                                                  const std::vector<std::vector<char>>& dropped,
                                                  double accuracy, const Work& work);

@@ -53,7 +53,7 @@ std::vector<TermTest> likelihood_term_tests(const GlmFit& fit, const Work& work)
     std::fill_n(dropped.back().begin() + static_cast<std::ptrdiff_t>(term.first), term.size(), 1);
   }
   // Close calls cost little on few rows; on many the passes stop where the figures shown are settled.
-  const double accuracy = model.data.rows <= 20000 ? 1e-10 : 1e-5;
+  const double accuracy = model.data.rows <= 20000 ? 1e-10 : 1e-4;
   const auto lost = deviance_lost(model, dropped, accuracy, work);
   for (std::size_t m = 0; m < together.size(); ++m) {
     TermTest& test = tests[together[m]];
