@@ -70,7 +70,7 @@ class Ranker {
 }  // namespace
 
 std::size_t default_draws(std::size_t units) {
-  return std::clamp<std::size_t>(2'000'000 / std::max<std::size_t>(units, 1), 400, 2000);
+  return std::clamp<std::size_t>(1'200'000 / std::max<std::size_t>(units, 1), 250, 2000);
 }
 
 UnitRanks rank_units(std::span<const double> counts, std::span<const double> exposures,

@@ -23,7 +23,7 @@ struct RanksSpec {
   std::uint64_t seed = default_seed;
 };
 
-/// 2,000 for up to 1,000 units, fewer for more, never below 400: a rank limit is then within a few
+/// 2,000 for up to 600 units, fewer for more, never below 250: a rank limit is then within a few
 /// hundredths of the table of where endless draws would put it.
 std::size_t default_draws(std::size_t units);
 
@@ -43,7 +43,7 @@ struct UnitRanks {
 /// More than most_ranked_units: rank as usual, mean_rank, low and high NaN.
 /// The draws do not depend on the number of hands: draw k has stream k of the seed.
 /// Refuses as fit_unit_rates; bad_value (confidence); too_large (units x draws above 4e7).
-/// Cost: about 30 ns for each unit and draw on one core.
+/// Cost: about 0.1 us for each unit and draw on one core.
 UnitRanks rank_units(std::span<const double> counts, std::span<const double> exposures,
                      const UnitRatePrior& prior, const RanksSpec& spec, const Work& work = {});
 
