@@ -5,7 +5,7 @@
 // number; its log chance is built from deviances, never from differences of large log gammas.
 // Source: Johnson, Kemp and Kotz 2005, Univariate Discrete Distributions, 5.6 (tails as beta tails);
 // Loader 2000, Fast and accurate computation of binomial probabilities (deviances).
-// Checked by: tests/engine/numbers/negative_binomial_test.cpp, tests/reference/negative_binomial.tsv.
+// Checked by: tests/engine/numbers/negative_binomial_test.cpp, tests/reference/numbers/negative_binomial.tsv.
 #pragma once
 
 namespace countsel {

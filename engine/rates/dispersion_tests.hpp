@@ -4,7 +4,7 @@
 // expect, each over its expectation. Poisson counts make it nearly chi-square; too much points to
 // clusters or mixed rates, too little to counts that hold each other back.
 // Source: Fisher, Thornton and Mackenzie 1922, Ann. Appl. Biol. 9; Hoel 1943, Ann. Math. Stat. 14.
-// Checked by: tests/engine/rates/dispersion_tests_test.cpp, tests/reference/count_fits.json.
+// Checked by: tests/engine/rates/dispersion_tests_test.cpp, tests/reference/rates/count_fits.tsv.
 #pragma once
 
 #include "engine/rates/count_fits_rows.hpp"

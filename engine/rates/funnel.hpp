@@ -5,7 +5,7 @@
 // and standings all come from that one distribution, so they cannot contradict each other.
 // Source: Spiegelhalter 2005, Stat. Med. 24, 1185-1202 (funnel, winsorised over-dispersion);
 // DerSimonian and Laird 1986, Control. Clin. Trials 7 (moment estimator of the between-unit variance).
-// Checked by: tests/engine/rates/funnel_test.cpp, tests/reference/funnel.json.
+// Checked by: tests/engine/rates/funnel_test.cpp, tests/reference/rates/funnel.tsv.
 #pragma once
 
 #include <cstddef>

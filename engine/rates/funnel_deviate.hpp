@@ -4,7 +4,7 @@
 // normal deviate whose tail equals the mid-p tail, with half the count's own chance in it. The deviate
 // stays finite where the tail is too small for a double.
 // Source: Lancaster 1961, J. Am. Statist. Ass. 56 (mid-p); Abramowitz and Stegun 1964, 26.2.12 (far normal
-// tail). Checked by: tests/engine/rates/funnel_deviate_test.cpp, tests/reference/funnel_deviate.tsv.
+// tail). Checked by: tests/engine/rates/funnel_deviate_test.cpp, tests/reference/rates/funnel.tsv.
 #pragma once
 
 namespace countsel {

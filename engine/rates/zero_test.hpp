@@ -3,7 +3,7 @@
 // The score test of an added share of zeros: each row's zero, or its absence, is weighed by how rare a
 // zero was there, so that a zero at a large exposure counts for much and one at a small exposure for little.
 // Source: van den Broek 1995, Biometrics 51, 738-743, with the common rate as the only covariate.
-// Checked by: tests/engine/rates/zero_test_test.cpp, tests/reference/count_fits.json.
+// Checked by: tests/engine/rates/zero_test_test.cpp, tests/reference/rates/count_fits.tsv.
 #pragma once
 
 #include "engine/rates/count_fits_rows.hpp"
