@@ -3,7 +3,7 @@
 
 #include "engine/rates/dispersion.hpp"
 #include "engine/table/group.hpp"
-#include "protocol/declare/nearest.hpp"
+#include "protocol/declare/comparison_options.hpp"
 #include "protocol/declare/question.hpp"
 #include "protocol/declare/shared_options.hpp"
 #include "protocol/wording/comparison.hpp"
@@ -39,66 +39,6 @@ void set_margin(WhichHigher& asked, const Json& given) {
   }
 }
 
-/// Codes of the group compared and of the reference; refuses anything but two groups.
-std::pair<std::size_t, std::size_t> two_groups(const Role& group,
-                                               const std::optional<std::string>& reference) {
-  const auto& levels = group.levels;
-  if (levels.size() < 2) {
-    throw Refusal(Code::too_few, "There is only one group, " + levels.front() + "; two are compared.",
-                  {{group.column, 0}}, "Add the rows of the other group, or ask how_often.");
-  }
-  if (levels.size() > 2) {
-    throw Refusal(Code::bad_value,
-                  "There are " + std::to_string(levels.size()) + " groups in " + group.column + " (" +
-                      listed(levels, 5) + "); two are compared.",
-                  {{group.column, 0}}, R"(Keep two with "only", or ask do_they_differ.)");
-  }
-  if (!reference) return {0, 1};
-  for (std::size_t i = 0; i < 2; ++i) {
-    if (levels[i] == *reference) return {1 - i, i};
-  }
-  const std::string near = nearest(*reference, levels);
-  throw Refusal(Code::bad_value, "The reference \"" + *reference + "\" is none of the groups.",
-                {{group.column, 0}},
-                near.empty() ? "The groups are " + listed(levels) + "." : "Did you mean \"" + near + "\"?");
-}
-
-RateMethod rate_method(RatioMethod method) {
-  switch (method) {
-    case RatioMethod::mid_p:
-      return RateMethod::mid_p;
-    case RatioMethod::score:
-      return RateMethod::score;
-    case RatioMethod::likelihood:
-      return RateMethod::likelihood;
-    case RatioMethod::log_wald:
-      return RateMethod::log_wald;
-    default:
-      return RateMethod::exact;
-  }
-}
-
-Source ratio_source(RatioMethod method) {
-  switch (method) {
-    case RatioMethod::exact:
-      return {"exact conditional limits of the ratio",
-              "Przyborowski and Wilenski, Biometrika 31 (1940) 313-323; Clopper and Pearson, Biometrika 26 "
-              "(1934) 404-413"};
-    case RatioMethod::mid_p:
-      return {"mid-p conditional limits of the ratio",
-              "Lancaster, J. Amer. Statist. Assoc. 56 (1961) 223-234"};
-    case RatioMethod::score:
-      return {"score limits of the ratio",
-              "Gu, Ng, Tang and Schucany, Biometrical Journal 50 (2008) 283-298"};
-    case RatioMethod::likelihood:
-      return {"likelihood-ratio limits of the ratio",
-              "Wilks, Annals of Mathematical Statistics 9 (1938) 60-62"};
-    default:
-      return {"log-Wald limits of the ratio",
-              "Wald, Trans. Amer. Math. Soc. 54 (1943) 426-482, on the log scale"};
-  }
-}
-
 Source difference_source(RatioMethod method) {
   if (method == RatioMethod::likelihood)
     return {"likelihood-ratio limits of the difference",
@@ -109,42 +49,8 @@ Source difference_source(RatioMethod method) {
           "Ng, Gu and Tang, Computational Statistics and Data Analysis 51 (2007) 3085-3099"};
 }
 
-Source test_source(TestMethod method) {
-  switch (method) {
-    case TestMethod::exact:
-      return {
-          "exact conditional test; two-sided twice the smaller tail, so that it agrees with the exact limits",
-          "Przyborowski and Wilenski, Biometrika 31 (1940) 313-323"};
-    case TestMethod::mid_p:
-      return {"mid-p conditional test; two-sided twice the smaller tail",
-              "Lancaster, J. Amer. Statist. Assoc. 56 (1961) 223-234"};
-    case TestMethod::score:
-      return {"score test", "Gu, Ng, Tang and Schucany, Biometrical Journal 50 (2008) 283-298"};
-    case TestMethod::likelihood:
-      return {"likelihood-ratio test", "Wilks, Annals of Mathematical Statistics 9 (1938) 60-62"};
-    default:
-      return {"E-test", "Krishnamoorthy and Thomson, J. Statistical Planning and Inference 119 (2004) 23-35"};
-  }
-}
-
-const std::vector<std::pair<std::string, RatioMethod>> limit_names = {{"exact", RatioMethod::exact},
-                                                                      {"mid-p", RatioMethod::mid_p},
-                                                                      {"score", RatioMethod::score},
-                                                                      {"likelihood", RatioMethod::likelihood},
-                                                                      {"log-wald", RatioMethod::log_wald}};
-const std::vector<std::pair<std::string, TestMethod>> test_names = {{"exact", TestMethod::exact},
-                                                                    {"mid-p", TestMethod::mid_p},
-                                                                    {"score", TestMethod::score},
-                                                                    {"likelihood", TestMethod::likelihood},
-                                                                    {"e-test", TestMethod::e_test}};
-
-template <class E>
-std::string name_of(E value, const std::vector<std::pair<std::string, E>>& names) {
-  for (const auto& [name, one] : names) {
-    if (one == value) return name;
-  }
-  return {};
-}
+const auto limit_names = shared::ratio_methods();
+const auto test_names = shared::test_methods();
 
 /// P-value of "worse than the margin" (or outside the two), small when that can be ruled out.
 template <class Test>
@@ -155,7 +61,9 @@ double margin_p(const std::vector<double>& margin, Test test) {
 }
 
 Answer answer(const WhichHigher& asked, Context&) {
-  const auto [first, reference] = two_groups(asked.group, asked.reference);
+  const auto [first, reference] =
+      shared::two_groups(asked.group, asked.reference, "Add the rows of the other group, or ask how_often.",
+                         R"(Keep two with "only", or ask do_they_differ.)");
   const auto totals = add_up(asked.count.numbers, asked.exposure.numbers, asked.group.codes, 2);
   const TwoRates data{totals.count[first], totals.exposure[first], totals.count[reference],
                       totals.exposure[reference]};
@@ -198,9 +106,10 @@ Answer answer(const WhichHigher& asked, Context&) {
       .level = 1 - confidence,
       .side = asked.side,
       .direction = asked.direction,
-      .limits = scaled ? "scaled" : name_of(asked.limits, limit_names),
+      .limits = scaled ? "scaled" : shared::name_of(asked.limits, limit_names),
       .test = scaled ? "scaled F test"
-                     : name_of(asked.test, test_names) + (asked.test == TestMethod::e_test ? "" : " test"),
+                     : shared::name_of(asked.test, test_names) +
+                           (asked.test == TestMethod::e_test ? "" : " test"),
   };
 
   Answer answer{.say = say_comparison(wording, said)};
@@ -238,7 +147,7 @@ Answer answer(const WhichHigher& asked, Context&) {
     const Limits own = scaled
                            ? scaled_rate_limits(count[g], exposure[g], phi, spread.df, confidence, asked.side)
                            : rate_limits(count[g], exposure[g],
-                                         {.method = rate_method(asked.limits),
+                                         {.method = shared::rate_method(asked.limits),
                                           .confidence = confidence,
                                           .side = asked.side,
                                           .prior = {}});
@@ -261,8 +170,8 @@ Answer answer(const WhichHigher& asked, Context&) {
       scaled ? std::vector<
                    Source>{{"scaled limits and F test on the log scale",
                             "McCullagh and Nelder, Generalized Linear Models, 2nd ed. 1989, section 6.2"}}
-             : std::vector<Source>{ratio_source(asked.limits), difference_source(asked.limits),
-                                   test_source(asked.test)};
+             : std::vector<Source>{shared::source_of(asked.limits), difference_source(asked.limits),
+                                   shared::source_of(asked.test)};
   answer.method.push_back({"posterior probability with Jeffreys' priors",
                            "Jeffreys, Theory of Probability, 3rd ed. 1961, section 3.1"});
   answer.picture = Picture{
@@ -322,10 +231,10 @@ extern const Question which_higher = question<WhichHigher>(
                   {"rate", Style::rate, "", "low", "high"},
                   {"low", Style::rate, ""},
                   {"high", Style::rate, ""}}}},
-     .sources = {ratio_source(RatioMethod::exact), ratio_source(RatioMethod::mid_p),
-                 ratio_source(RatioMethod::score), ratio_source(RatioMethod::likelihood),
-                 ratio_source(RatioMethod::log_wald), difference_source(RatioMethod::score),
-                 test_source(TestMethod::exact), test_source(TestMethod::e_test)},
+     .sources = {shared::source_of(RatioMethod::exact), shared::source_of(RatioMethod::mid_p),
+                 shared::source_of(RatioMethod::score), shared::source_of(RatioMethod::likelihood),
+                 shared::source_of(RatioMethod::log_wald), difference_source(RatioMethod::score),
+                 shared::source_of(TestMethod::exact), shared::source_of(TestMethod::e_test)},
      .headline = "ratio",
      .answer = answer,
      .examples =
