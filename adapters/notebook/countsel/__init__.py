@@ -43,7 +43,7 @@ def __getattr__(name):
             _make_functions()  # an engine may have been built since; EngineMissing says what to do if not
         if name in globals():
             return globals()[name]
-    raise AttributeError(f"module 'countsel' has no attribute {name!r}{shared.near(name)}")
+    raise AttributeError(f"module 'countsel' has no attribute {name!r}{shared.hint_for(name)}")
 
 
 try:

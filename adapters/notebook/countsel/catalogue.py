@@ -1,12 +1,12 @@
 # adapters/notebook/countsel/catalogue.py -- a question of the engine's catalogue, as a Python function.
 #
 # Signature, docstring and checks are read off the entry; no question is known here by name.
-import difflib
 import inspect
 import json
 import keyword
 
 from .answer import Answer
+from .nearest import nearest
 from .refused import UnknownArgument
 
 DATA = "data"
@@ -36,8 +36,8 @@ def function_of(entry, ask):
             given = (keywords.pop(DATA),)
         for name in keywords:
             if name not in known:
-                near = difflib.get_close_matches(name, known, 1)
-                hint = f'Did you mean "{near[0]}"?' if near else f"Known: {', '.join(known)}."
+                near = nearest(name, known)
+                hint = f'Did you mean "{near}"?' if near else f"Known: {', '.join(known)}."
                 text = f'"{name}" is no argument of {entry["name"]}.'
                 raise UnknownArgument("unknown_key", text, hint=hint, question=entry["name"])
         return ask(entry, given[0] if given else None, keywords)

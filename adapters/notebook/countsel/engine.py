@@ -1,17 +1,16 @@
 # adapters/notebook/countsel/engine.py -- an engine of one's own, each question a method.
-import difflib
-
 from .answer import Answer
 from .catalogue import function_of, request_of
 from .client import Client
 from .data import all_columns, of_data, plain
 from .handle import Held
+from .nearest import nearest
 from .progress import teller
 from .refused import Refused
 from .trouble import EngineTrouble
 
 START_S = 30  # a program that says nothing for so long is no engine
-SHOWN_ROWS = 2000  # up to here the rounded texts come along, for the notebook's tables
+SHOWN_ROWS = 10_000  # up to here the rounded texts come along, for the notebook's tables
 PARTS = ["say", "figures", "tables", "heads", "shown", "headline", "picture", "method", "notes", "stamp"]
 # Services that serve the client itself, or that it offers in its own way below.
 OWN = {"hold", "release", "quick", "cancel", "goodbye"}
@@ -70,8 +69,8 @@ class Engine:
         catalogue = self.__dict__.get("_catalogue", {})
         if name in catalogue and name not in OWN:
             return function_of(catalogue[name], self._answer)
-        near = difflib.get_close_matches(name, [*catalogue, *dir(type(self))], 1)
-        hint = f"; did you mean {near[0]}?" if near else ""
+        near = None if name.startswith("_") else nearest(name, [*catalogue, *dir(type(self))])
+        hint = f"; did you mean {near}?" if near else ""
         raise AttributeError(f"the engine has no question {name!r}{hint}")
 
     def __dir__(self):

@@ -1,9 +1,9 @@
 # adapters/notebook/countsel/shared.py -- the one engine that the module's functions ask.
-import difflib
 import threading
 
 from .catalogue import function_of
 from .engine import Engine
+from .nearest import nearest
 
 METHODS = ("ask", "hold", "quick", "release")
 
@@ -27,7 +27,7 @@ def functions():
     return made | {name: function_of(asked.catalogue[name], asked._answer) for name in asked.asks()}
 
 
-def near(name):
-    """A hint at the question meant, where there is one."""
-    close = difflib.get_close_matches(name, _engine.asks(), 1) if _engine else []
-    return f"; did you mean {close[0]}?" if close else ""
+def hint_for(name):
+    """What may have been meant by an unknown name, as the end of a sentence."""
+    meant = nearest(name, _engine.asks()) if _engine else None
+    return f"; did you mean {meant}?" if meant else ""
