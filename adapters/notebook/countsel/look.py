@@ -79,7 +79,7 @@ def folded(reply):
 
 
 def plain_text(value):
-    """A cell without the engine's rounding: four digits, whole numbers in full."""
+    """A cell without the engine's rounding: four digits, and those before the point in full."""
     if value is None:
         return ""
     if isinstance(value, bool):
@@ -88,4 +88,6 @@ def plain_text(value):
         return "no limit"
     if isinstance(value, int) or (isinstance(value, float) and value.is_integer() and abs(value) < 1e15):
         return f"{int(value):,}"
+    if isinstance(value, float) and 1000 <= abs(value) < 1e15:
+        return f"{value:,.0f}"
     return f"{value:.4g}" if isinstance(value, float) else str(value)

@@ -147,13 +147,20 @@ class Look(unittest.TestCase):
     def test_a_table_has_its_heads_rounded_texts_and_the_rest_plain(self):
         reply = {
             "tables": {
-                "t": {"label": ["a"], "high": ["inf"], "rate": [2.3456789], "count": [12345], "low": [None]}
+                "t": {
+                    "label": ["a"],
+                    "high": ["inf"],
+                    "rate": [2.3456789],
+                    "count": [12345],
+                    "low": [None],
+                    "every": [3232.7],
+                }
             },
             "heads": {"t": {"rate": "bursts per 100 km-years"}},
             "shown": {"t": {"rate": ["2.3 (1.1 to no limit)"]}},
         }
         texts = Reader(html_of(reply)).texts
-        for text in ("bursts per 100 km-years", "2.3 (1.1 to no limit)", "no limit", "12,345", "label"):
+        for text in ("bursts per 100 km-years", "2.3 (1.1 to no limit)", "no limit", "12,345", "3,233", "label"):
             self.assertIn(text, texts)
 
     def test_a_long_table_is_cut_and_says_so(self):

@@ -110,6 +110,15 @@ class Death(Case):
         with self.assertRaisesRegex(EngineTrouble, "closed"):
             engine.echo(pips=1)
 
+    def test_an_engine_that_nobody_keeps_ends(self):
+        engine = Engine(FAKE)
+        pid, question = engine.pid, engine.echo
+        del engine
+        self.assertEqual(question(pips=1).more["pid"], pid)  # its function keeps it
+        del question
+        with self.assertRaises(ProcessLookupError):
+            os.kill(pid, 0)
+
     def test_the_engine_ends_with_python(self):
         done = python(f"import countsel; print(countsel.Engine({FAKE!r}).pid)", COUNTSEL_ENGINE=FAKE)
         self.assertEqual(done.stderr, "")
