@@ -14,13 +14,18 @@ void Sum::add(double value) {
   if (std::isfinite(next.low)) lost_ += next.low;
 }
 
+void Sum::add(const Sum& block) {
+  add(block.total_);
+  lost_ += block.lost_;
+}
+
 double sum(std::span<const double> values) {
   Sum all;
   for (std::size_t from = 0; from < values.size(); from += block_rows) {
     Sum block;
     for (const double value : values.subspan(from, std::min(block_rows, values.size() - from)))
       block.add(value);
-    all.add(block.value());
+    all.add(block);
   }
   return all.value();
 }

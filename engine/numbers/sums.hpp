@@ -15,6 +15,7 @@ namespace countsel {
 class Sum {
  public:
   void add(double value);
+  void add(const Sum& block);  ///< with what that sum remembers
   double value() const { return total_ + lost_; }
 
  private:
