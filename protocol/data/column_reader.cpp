@@ -37,6 +37,7 @@ const char* wanted(Holds holds) {
     case Holds::count:
       return "a count is a whole number, 0 or more";
     case Holds::exposure:
+    case Holds::exposure_or_0:
       return "an exposure is a number above 0";
     default:
       return "a number belongs there";
@@ -213,6 +214,7 @@ void ColumnReader::judge(const ReadColumn& read) {
       case Holds::count:
         return v >= 0 && v <= largest_count && v == std::trunc(v);
       case Holds::exposure:
+      case Holds::exposure_or_0:
       case Holds::not_below_0:
         return v >= 0;
       case Holds::above_0:
@@ -239,6 +241,7 @@ void ColumnReader::judge(const ReadColumn& read) {
                      first < 0 ? "Look for a correction booked as a negative count."
                                : "If it is a rate, give the count and the exposure instead.");
     case Holds::exposure:
+    case Holds::exposure_or_0:
       trouble.refuse(Code::bad_exposure, places_, is + "an exposure is above 0.",
                      "Give how much was observed, never its logarithm.");
     case Holds::above_0:
@@ -271,7 +274,8 @@ ReadColumn ColumnReader::read(const Column& column, Holds holds) {
   return read;
 }
 
-void ColumnReader::settle_zero_exposures(const ReadColumn& exposure, const ReadColumn* count) {
+void ColumnReader::settle_zero_exposures(const ReadColumn& exposure, const ReadColumn* count,
+                                         bool leave_out) {
   Trouble trouble;
   const auto values = exposure.values();
   double first = 0;
@@ -281,7 +285,7 @@ void ColumnReader::settle_zero_exposures(const ReadColumn& exposure, const ReadC
     if (counted > 0) {
       if (!trouble.any()) first = counted;
       trouble.add(exposure.column->name, row);
-    } else {
+    } else if (leave_out) {
       left_out_.leave_out(row, "zero_exposure", exposure.column->name);
     }
   }
