@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "protocol/declare/nearest.hpp"
+#include "protocol/wire/brief.hpp"
 
 namespace countsel {
 namespace {
@@ -18,7 +19,7 @@ namespace {
     for (std::size_t i = 0; i < known.size(); ++i) hint += (i ? ", " : "") + known[i];
     hint += ".";
   }
-  throw Refusal(Code::unknown_key, "\"" + key + "\" is not known " + where + ".", {}, std::move(hint));
+  throw Refusal(Code::unknown_key, "\"" + brief(key) + "\" is not known " + where + ".", {}, std::move(hint));
 }
 
 const std::vector<std::string> word_keys = {"event", "events", "exposure", "period"};
@@ -59,7 +60,7 @@ std::string allowed_text(const OptionSpec& spec) {
 }
 
 void check_keys(const Question& question, const Request& request) {
-  if (!request.unknown_keys.empty()) unknown_key("in a request", request.unknown_keys.front(), outer_keys);
+  if (request.unknown_key) unknown_key("in a request", *request.unknown_key, outer_keys);
   const bool data = !question.roles.empty();
   std::vector<std::string> of_known = question.of_keys;
   std::vector<std::string> role_names;
@@ -116,7 +117,7 @@ void set_option(const OptionSpec& spec, const Json& value, Asked& asked) {
   const auto refuse = [&] {
     const Json standard = spec.get ? spec.get(asked) : Json();
     throw Refusal(Code::bad_value,
-                  spec.name + " is " + value.dump() + "; it should be " + allowed_text(spec) + ".", {},
+                  spec.name + " is " + brief_json(value) + "; it should be " + allowed_text(spec) + ".", {},
                   standard.is_null() ? "" : "The default is " + standard.dump() + ".");
   };
   if (spec.type == "number" || spec.type == "whole") {
@@ -134,8 +135,8 @@ void set_option(const OptionSpec& spec, const Json& value, Asked& asked) {
       for (const auto& word : spec.allowed) words.push_back(word.get<std::string>());
       const std::string near = nearest(value.get<std::string>(), words);
       throw Refusal(
-          Code::bad_value, spec.name + " is " + value.dump() + "; it should be " + allowed_text(spec) + ".",
-          {},
+          Code::bad_value,
+          spec.name + " is " + brief_json(value) + "; it should be " + allowed_text(spec) + ".", {},
           near.empty() ? "The default is " + spec.get(asked).dump() + "." : "Did you mean \"" + near + "\"?");
     }
   } else if (spec.type == "boolean") {

@@ -3,12 +3,13 @@
 
 #include "engine/refusal.hpp"
 #include "protocol/declare/question.hpp"
+#include "protocol/wire/brief.hpp"
 
 namespace countsel {
 namespace bind {
 
 void wrong_type(const std::string& option, const std::string& wanted, const Json& got) {
-  throw Refusal(Code::bad_type, option + " is " + got.dump() + "; it should be " + wanted + ".");
+  throw Refusal(Code::bad_type, option + " is " + brief_json(got) + "; it should be " + wanted + ".");
 }
 
 std::string level_of(const std::string& option, const Json& got) {

@@ -10,6 +10,7 @@
 #include "protocol/data/intake.hpp"
 #include "protocol/declare/decode.hpp"
 #include "protocol/declare/nearest.hpp"
+#include "protocol/wire/brief.hpp"
 #include "protocol/wire/reply.hpp"
 #include "protocol/wording/cautions.hpp"
 
@@ -66,15 +67,15 @@ Refusal current_trouble() {
 
 const Question& question_of(const Request& request) {
   if (request.trouble) throw *request.trouble;
+  if (request.ask_trouble) throw *request.ask_trouble;
   if (request.ask.empty()) {
-    if (request.type_trouble && request.unknown_keys.empty()) throw *request.type_trouble;
     throw Refusal(Code::unknown_ask, "The request asks nothing.", {},
                   R"(Give "ask" the name of a question; {"ask":"questions"} lists them.)");
   }
   const Question* question = find_question(request.ask);
   if (!question) {
     const std::string near = nearest(request.ask, question_names());
-    throw Refusal(Code::unknown_ask, "\"" + request.ask + "\" is no question that Countsel knows.", {},
+    throw Refusal(Code::unknown_ask, "\"" + brief(request.ask) + "\" is no question that Countsel knows.", {},
                   near.empty() ? R"({"ask":"questions"} lists them.)" : "Did you mean \"" + near + "\"?");
   }
   check_keys(*question, request);

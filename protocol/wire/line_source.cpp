@@ -1,78 +1,137 @@
-// protocol/wire/line_source.cpp -- filling the buffer, counting a line's bytes.
+// protocol/wire/line_source.cpp -- filling the buffer, finding a line's end, counting its bytes.
 #include "protocol/wire/line_source.hpp"
 
+#include <poll.h>
 #include <unistd.h>
 
 #include <algorithm>
 #include <cerrno>
+#include <cstring>
+#include <limits>
 
 namespace countsel {
+namespace {
 
-LineSource::LineSource(int descriptor, std::size_t longest_line)
-    : descriptor_(descriptor), longest_(longest_line), buffer_(std::size_t{1} << 18) {}
+constexpr std::size_t buffer_size = std::size_t{1} << 18;
 
-bool LineSource::refill() {
-  if (ended_) return false;
-  length_ += position_ - mark_;
-  mark_ = position_ = filled_ = 0;
+/// Bytes read, 0 at the end of input or on trouble; waits where the descriptor would not.
+std::size_t read_some(int descriptor, char* into, std::size_t room) {
   for (;;) {
-    const auto got = ::read(descriptor_, buffer_.data(), buffer_.size());
-    if (got > 0) {
-      filled_ = static_cast<std::size_t>(got);
-      return true;
-    }
-    if (got < 0 && errno == EINTR) continue;
-    ended_ = true;
-    return false;
+    const auto got = ::read(descriptor, into, room);
+    if (got >= 0) return static_cast<std::size_t>(got);
+    if (errno == EINTR) continue;
+    if (errno != EAGAIN) return 0;
+    pollfd waiting{descriptor, POLLIN, 0};
+    ::poll(&waiting, 1, -1);
   }
 }
 
-bool LineSource::end_here() {
-  if (buffer_[position_] != '\n') too_long_ = true;
-  return true;
+}  // namespace
+
+LineSource::LineSource(int descriptor, std::size_t longest_line)
+    : descriptor_(descriptor), longest_(longest_line), buffer_(buffer_size) {}
+
+LineSource::LineSource(std::string_view line)
+    : descriptor_(-1),
+      longest_(std::numeric_limits<std::size_t>::max()),
+      buffer_(line.begin(), line.end()),
+      filled_(line.size()),
+      ended_(true) {
+  buffer_.push_back('\n');
+  begin_line();
+}
+
+bool LineSource::refill() {
+  if (recording_) record_.append(buffer_.data() + record_from_, filled_ - record_from_);
+  record_from_ = 0;
+  length_ += filled_ - mark_;
+  mark_ = position_ = filled_ = stop_ = 0;
+  if (ended_) return false;
+  filled_ = read_some(descriptor_, buffer_.data(), buffer_.size());
+  ended_ = filled_ == 0;
+  return !ended_;
+}
+
+void LineSource::set_stop() {
+  const auto* from = buffer_.data() + position_;
+  const auto* newline = static_cast<const char*>(std::memchr(from, '\n', filled_ - position_));
+  stop_ = newline ? static_cast<std::size_t>(newline - buffer_.data()) : filled_;
+  const std::size_t allowed = longest_ - std::min(longest_, length_ + (position_ - mark_));
+  if (stop_ - position_ > allowed) stop_ = position_ + allowed;
+}
+
+bool LineSource::more_of_line() {
+  while (position_ == filled_) {
+    if (!refill()) return false;
+    set_stop();
+    if (position_ < stop_) return true;
+  }
+  too_long_ = too_long_ || buffer_[position_] != '\n';
+  return false;
 }
 
 void LineSource::skip_line() {
-  if (!inside_) return;
-  for (;;) {
-    if (position_ == filled_ && !refill()) break;
-    const char c = buffer_[position_++];
-    if (c == '\n') break;
+  while (inside_) {
+    const auto* from = buffer_.data() + position_;
+    const auto* newline = static_cast<const char*>(std::memchr(from, '\n', filled_ - position_));
+    if (newline) {
+      position_ = static_cast<std::size_t>(newline - buffer_.data()) + 1;
+      inside_ = false;
+    } else if (!refill()) {
+      inside_ = false;
+    }
   }
-  inside_ = false;
 }
 
-bool LineSource::begin_line() {
+void LineSource::begin_line() {
   mark_ = position_;
   length_ = 0;
-  too_long_ = false;
+  too_long_ = recording_ = false;
   inside_ = true;
-  if (!first_) return true;
-  first_ = false;
-  // Part of a mark is put back, for the parser to refuse.
-  static constexpr char byte_order_mark[] = "\xEF\xBB\xBF";
-  for (int i = 0; i < 3; ++i) {
-    if (position_ == filled_ && !refill()) return false;
-    if (buffer_[position_] != byte_order_mark[i]) {
-      position_ -= std::min(position_, static_cast<std::size_t>(i));
-      break;
-    }
-    ++position_;
+  set_stop();
+}
+
+void LineSource::pass_byte_order_mark() {
+  constexpr std::string_view mark = "\xEF\xBB\xBF";
+  const auto begins = [&](std::size_t bytes) {
+    return std::string_view(buffer_.data(), bytes) == mark.substr(0, bytes);
+  };
+  // Wait for the rest only of what may be a mark: any other line must be answered at once.
+  while (!ended_ && filled_ < mark.size() && begins(filled_)) {
+    const auto got = read_some(descriptor_, buffer_.data() + filled_, buffer_.size() - filled_);
+    filled_ += got;
+    ended_ = got == 0;
   }
-  mark_ = position_;
-  return true;
+  if (filled_ >= mark.size() && begins(mark.size())) position_ = mark.size();
 }
 
 bool LineSource::next_line() {
   skip_line();
   for (;;) {
     if (position_ == filled_ && !refill()) return false;
-    if (!begin_line()) return false;
+    if (first_) {
+      first_ = false;
+      pass_byte_order_mark();
+      if (position_ == filled_) continue;
+    }
+    begin_line();
     while (!at_end() && (current() == ' ' || current() == '\t' || current() == '\r')) advance();
     if (!at_end() || too_long_) return true;
-    if (position_ == filled_) return false;
     skip_line();
   }
+}
+
+void LineSource::record() {
+  recording_ = true;
+  record_.clear();
+  record_from_ = position_;
+}
+
+std::string LineSource::recorded() {
+  if (!recording_) return {};
+  recording_ = false;
+  record_.append(buffer_.data() + record_from_, position_ - record_from_);
+  return std::move(record_);
 }
 
 }  // namespace countsel

@@ -6,8 +6,9 @@
 #pragma once
 
 #include <cstddef>
-#include <cstdint>
 #include <iterator>
+#include <string>
+#include <string_view>
 #include <vector>
 
 namespace countsel {
@@ -15,19 +16,19 @@ namespace countsel {
 class LineSource {
  public:
   LineSource(int descriptor, std::size_t longest_line);
+  /// One line that is at hand already.
+  explicit LineSource(std::string_view line);
 
   /// Moves to the next line that is not empty; false at the end of input. A byte-order mark at the
   /// very start of the input is passed over.
   bool next_line();
   /// Passes over what is left of the current line.
   void skip_line();
+  /// Was the line longer than allowed? Known once its allowed bytes have been read.
   bool line_too_long() const { return too_long_; }
 
-  /// At the end of the current line (or beyond its allowed length)?
-  bool at_end() {
-    if (position_ == filled_ && !refill()) return true;
-    return buffer_[position_] == '\n' || length_ + (position_ - mark_) >= longest_ ? end_here() : false;
-  }
+  /// At the end of the current line (or of its allowed length)?
+  bool at_end() { return position_ == stop_ && !more_of_line(); }
   char current() const {
     // The parser would take a NUL for the end of its input; a control character it refuses.
     const char c = buffer_[position_];
@@ -35,21 +36,31 @@ class LineSource {
   }
   void advance() { ++position_; }
 
+  /// Starts to remember what is read; `recorded` is what was read since, and stops it.
+  void record();
+  std::string recorded();
+
  private:
   bool refill();
-  bool end_here();
-  bool begin_line();
+  void begin_line();
+  void pass_byte_order_mark();
+  void set_stop();
+  bool more_of_line();
 
   int descriptor_;
   std::size_t longest_;
   std::vector<char> buffer_;
   std::size_t position_ = 0, filled_ = 0;
+  std::size_t stop_ = 0;    // up to where the buffer surely holds bytes of this line
   std::size_t mark_ = 0;    // where counting of this line last started in the buffer
   std::size_t length_ = 0;  // bytes of this line before the mark
+  std::string record_;
+  std::size_t record_from_ = 0;
+  bool recording_ = false;
   bool ended_ = false, first_ = true, too_long_ = false, inside_ = false;
 };
 
-/// Input iterator over the current line, for the parser.
+/// Input iterator over the current line, for the parser; a default one is the end.
 class LineIterator {
  public:
   using iterator_category = std::input_iterator_tag;
@@ -66,11 +77,9 @@ class LineIterator {
     return *this;
   }
   void operator++(int) { source_->advance(); }
-  bool operator==(const LineIterator& other) const {
-    // One of the two is the end: a line is only ever walked once.
-    return source_ ? source_->at_end() : other.source_ == nullptr || other.source_->at_end();
-  }
-  bool operator!=(const LineIterator& other) const { return !(*this == other); }
+  /// Only asked of a walking iterator, against the end.
+  bool operator!=(const LineIterator&) const { return !source_->at_end(); }
+  bool operator==(const LineIterator&) const { return source_->at_end(); }
 
  private:
   LineSource* source_ = nullptr;

@@ -35,21 +35,23 @@ struct Of {
   Column first_row;                          ///< of the range, cell by cell
   std::int64_t uneven_row = 0;
   std::size_t uneven_cells = 0;
-  std::string id;  ///< as it was written, for `cancel`
+  std::string id;  ///< as JSON text, for `cancel`; empty if absent
   Json rest;  ///< object of the small keys as written: held, file, roles, only, origin, header, line, id, …
 };
 
 struct Request {
-  std::string id;  ///< as it was written, a JSON text; empty if absent
+  std::string id;        ///< as it was written, a JSON text; empty if absent
+  std::string id_plain;  ///< the same without needless escapes, to compare ids by
   std::string ask;
   Of of;
   Json with, words, want;  ///< null if absent
   Json read_as;            ///< of `quick`: what the line was read as; else null
   std::optional<double> within_s;
   bool progress = false;
-  std::vector<std::string> unknown_keys;
-  std::optional<Refusal> trouble;       ///< the line's syntax, or a key of the wrong type
-  std::optional<Refusal> type_trouble;  ///< decided after the unknown keys
+  std::optional<std::string> unknown_key;  ///< the first
+  std::optional<Refusal> trouble;          ///< the line's syntax
+  std::optional<Refusal> ask_trouble;      ///< `ask` is no text
+  std::optional<Refusal> type_trouble;     ///< a key of the wrong type, decided after the unknown keys
 };
 
 }  // namespace countsel

@@ -1,7 +1,7 @@
 // protocol/wire/request_reader.hpp -- one line becomes one Request, in one pass.
 //
-// A SAX handler: numbers of the data go from the parser into columns, only the small parts (options,
-// words) become a document tree. The order of a request's keys does not matter.
+// The numbers of the data go from the parser into columns, only the small parts (options, words) become a
+// document tree. The order of a request's keys does not matter.
 // Checked by: tests/protocol/wire/request_reader_test.cpp.
 #pragma once
 

@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "protocol/wire/json_fwd.hpp"
+#include "protocol/wire/limits.hpp"
 
 namespace countsel {
 
@@ -16,40 +17,29 @@ class TreeBuilder {
     root_ = &root;
     open_.clear();
   }
-  bool open(Json container) {
-    open_.push_back(&put(std::move(container)));
-    return true;
-  }
-  bool close() {
-    open_.pop_back();
-    return true;
-  }
-  /// False if the key stands there already.
-  bool key(const std::string& name) {
-    if (open_.back()->contains(name)) return false;
-    key_ = name;
-    (*open_.back())[name] = nullptr;
-    return true;
-  }
-  bool value(Json value) {
-    put(std::move(value));
-    return true;
-  }
+  void open(Json container) { open_.push_back(&put(std::move(container))); }
+  void close() { open_.pop_back(); }
+  void key(std::string name) { key_ = std::move(name); }
+  void value(Json value) { put(std::move(value)); }
+  bool too_many() const { return values_ > limits::most_values; }
 
  private:
   Json& put(Json value) {
+    ++values_;
     if (open_.empty()) return *root_ = std::move(value);
     Json& into = *open_.back();
     if (into.is_array()) {
       into.push_back(std::move(value));
       return into.back();
     }
-    return into[key_] = std::move(value);
+    // Straight to the end: a key given twice has been refused before, and looking for it would take long.
+    return into.get_ref<Json::object_t&>().emplace_back(std::move(key_), std::move(value)).second;
   }
 
   Json* root_ = nullptr;
   std::vector<Json*> open_;
   std::string key_;
+  std::size_t values_ = 0;
 };
 
 }  // namespace countsel
