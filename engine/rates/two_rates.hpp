@@ -54,8 +54,8 @@ enum class ETestStatistic { score, unpooled };
 
 /// The E-test: the chance, with both rates at their estimate under the null, of a standardised
 /// difference at least as far out (Krishnamoorthy and Thomson 2004, J. Stat. Plan. Inference 119). Countsel
-/// takes the score statistic; `unpooled` is the variance their own published values use. A null ratio
-/// scales exposure 1. Summed over both counts while their sum is at most 2e7 (under 30 ms); beyond that the
+/// takes `unpooled`, the statistic of their own published values; with equal exposures both are the same. A
+/// null ratio scales exposure 1. Summed over both counts while their sum is at most 2e7 (under 30 ms); beyond that the
 /// conditional mid-p value stands in for it, which then differs by less than 1e-5 of itself where it is above
 /// 1e-80. Both counts 0: 1. Refuses as ratio_test.
 double e_test(const TwoRates& data, ETestStatistic statistic, Direction direction, double null_ratio = 1);

@@ -51,7 +51,7 @@ struct Question {
     if (i + j == 0 || !(sign * score_deviate(i, j, share) > 0)) return false;
     const Direction direction = either ? Direction::either : (larger() ? Direction::above : Direction::below);
     const TwoRates counts{i, exposures.exposure1, j, exposures.exposure0};
-    return e_test(counts, ETestStatistic::score, direction) <= (either ? 2 * level : level);
+    return e_test(counts, ETestStatistic::unpooled, direction) <= (either ? 2 * level : level);
   }
 };
 

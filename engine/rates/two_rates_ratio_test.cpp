@@ -17,7 +17,7 @@ double ratio_test(const TwoRates& data, TestMethod method, Direction direction, 
     case TestMethod::likelihood:
       return directed_p(direction, likelihood_deviate(x1, x0, share));
     case TestMethod::e_test:
-      return e_test(data, ETestStatistic::score, direction, null_ratio);
+      return e_test(data, ETestStatistic::unpooled, direction, null_ratio);
     case TestMethod::exact:
     case TestMethod::mid_p:
       break;
