@@ -49,10 +49,50 @@ Exposures different_exposures(const CountRows& sorted) {
   return fewer;
 }
 
+// Chances of the classes that begin at these values, the first open below and one more, open above, at the
+// end. Tails are taken outwards from the mean, each class as the difference of two tails of its own side;
+// beyond a tail of `nothing` no more are asked for.
+std::vector<double> class_chances(const std::vector<double>& starts, double shape, double mean) {
+  constexpr double nothing = 1e-25;
+  const std::size_t n = starts.size();
+  const auto middle =
+      static_cast<std::size_t>(std::upper_bound(starts.begin(), starts.end(), mean) - starts.begin());
+  std::vector<double> chances(n + 1, 0.0);  // chances[k]: from starts[k - 1] to below starts[k]
+  double inner_above = 0, inner_below = 0;
+  double tail = 0;
+  for (std::size_t k = middle; k < n; ++k) {
+    const double above = negative_binomial_at_least(starts[k], shape, mean);
+    if (k == middle) {
+      inner_above = above;
+    } else {
+      chances[k] = tail - above;
+    }
+    tail = above;
+    if (above < nothing) break;
+  }
+  chances[n] += tail < nothing ? 0 : tail;
+  tail = 0;
+  for (std::size_t k = middle; k-- > 0;) {
+    const double below = negative_binomial_at_most(starts[k] - 1, shape, mean);
+    if (k + 1 == middle) {
+      inner_below = below;
+    } else {
+      chances[k + 1] = tail - below;
+    }
+    tail = below;
+    if (below < nothing) break;
+  }
+  chances[0] += tail < nothing ? 0 : tail;
+  chances[middle] += 1 - inner_above - inner_below;
+  return chances;
+}
+
 // Expected rows in [value, value + width) for each value, then below the first and above the last.
 std::vector<double> expected_rows(const Exposures& exposures, const std::vector<double>& values, double width,
                                   double rate, double spread, const Work& work) {
-  const double shape = 1 / spread, end = values.back() + width;
+  const double shape = 1 / spread;
+  std::vector<double> starts = values;
+  starts.push_back(values.back() + width);
   std::vector<Sum> sums(values.size() + 2);
   for (std::size_t i = 0; i < exposures.exposure.size(); ++i) {
     work.progress.check();
@@ -60,19 +100,14 @@ std::vector<double> expected_rows(const Exposures& exposures, const std::vector<
     if (width == 1) {
       for (std::size_t k = 0; k < values.size(); ++k)
         sums[k].add(times * negative_binomial_exactly(values[k], shape, mean));
-    } else {
-      for (std::size_t k = 0; k < values.size(); ++k) {
-        // The difference is taken between the tails on the class's own side of the mean.
-        const double a = values[k], b = a + width;
-        const double inside =
-            a > mean ? negative_binomial_at_least(a, shape, mean) - negative_binomial_at_least(b, shape, mean)
-                     : negative_binomial_at_most(b - 1, shape, mean) -
-                           negative_binomial_at_most(a - 1, shape, mean);
-        sums[k].add(times * inside);
-      }
+      sums[values.size()].add(times * negative_binomial_at_most(starts.front() - 1, shape, mean));
+      sums[values.size() + 1].add(times * negative_binomial_at_least(starts.back(), shape, mean));
+      continue;
     }
-    sums[values.size()].add(times * negative_binomial_at_most(values.front() - 1, shape, mean));
-    sums[values.size() + 1].add(times * negative_binomial_at_least(end, shape, mean));
+    const std::vector<double> chances = class_chances(starts, shape, mean);
+    for (std::size_t k = 0; k < values.size(); ++k) sums[k].add(times * chances[k + 1]);
+    sums[values.size()].add(times * chances.front());
+    sums[values.size() + 1].add(times * chances.back());
   }
   std::vector<double> expected;
   for (const Sum& sum : sums) expected.push_back(sum.value());

@@ -28,7 +28,8 @@ class Grid {
         columns_(columns),
         threshold_(threshold),
         value_((rows + 1) * (columns + 1)),
-        shown_(value_.size(), Shown::plain) {
+        shown_(value_.size(), Shown::plain),
+        on_path_(value_.size(), 0) {
     for (std::size_t r = 0; r <= rows; ++r)
       for (std::size_t c = 0; c <= columns; ++c) {
         if (r < rows && c < columns) value(r, c) = counts[r * columns + c];
@@ -52,7 +53,7 @@ class Grid {
     bool all = true;
     for (std::size_t r = 0; r <= rows_; ++r)
       for (std::size_t c = 0; c <= columns_; ++c)
-        if (shown(r, c) == Shown::small && !open(r, c)) all = false;
+        if (shown(r, c) == Shown::small && !on_path_[r * (columns_ + 1) + c] && !open(r, c)) all = false;
     return all;
   }
 
@@ -126,8 +127,10 @@ class Grid {
       if (path.cost < best.cost) best = std::move(path);
     }
     if (std::isinf(best.cost)) return false;
-    for (const auto& [row, column] : best.cells)
+    for (const auto& [row, column] : best.cells) {
       if (shown(row, column) == Shown::plain) shown(row, column) = Shown::kept_back;
+      on_path_[row * (columns_ + 1) + column] = 1;
+    }
     return true;
   }
 
@@ -135,6 +138,7 @@ class Grid {
   double threshold_;
   std::vector<double> value_;
   std::vector<Shown> shown_;
+  std::vector<char> on_path_;  ///< known to lie on a closed path
 };
 
 }  // namespace

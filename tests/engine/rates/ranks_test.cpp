@@ -19,11 +19,11 @@ TEST_CASE("the expected rank of one of two is one plus the chance of being secon
   const std::vector<double> counts{9, 5}, exposures{100, 80};
   const UnitRatePrior prior{2, 40, 0.05, 0, false};
   RanksSpec spec;
-  spec.draws = 200000;
+  spec.draws = 50000;
   const UnitRanks ranks = rank_units(counts, exposures, prior, spec);
   // gamma(11)/140 > gamma(7)/120  <=>  beta(11, 7) > 140 / (140 + 120)
   const double first_higher = beta_above(11, 7, 140.0 / 260);
-  CHECK(ranks.mean_rank[0] == doctest::Approx(2 - first_higher).epsilon(0.003));
+  CHECK(ranks.mean_rank[0] == doctest::Approx(2 - first_higher).epsilon(0.006));
   CHECK(ranks.mean_rank[0] + ranks.mean_rank[1] == doctest::Approx(3));
 }
 
