@@ -6,6 +6,7 @@
 #include <unordered_map>
 
 #include "protocol/data/cells.hpp"
+#include "protocol/wording/words.hpp"
 
 namespace countsel {
 namespace {
@@ -81,10 +82,7 @@ void RowsLeftOut::tell(std::vector<Note>& notes, const Places&) const {
   for (const auto& [why, column, rows] : reasons_) {
     Note note{why, "", {}};
     const std::string were = rows.size() == 1 ? " was" : " were";
-    const std::string list = row_list(rows);
-    const std::string named =
-        std::string(1, static_cast<char>(std::toupper(static_cast<unsigned char>(list[0])))) +
-        list.substr(1) + were + " left out: ";
+    const std::string named = capital(row_list(rows)) + were + " left out: ";
     if (why == "blank") {
       note.text = named + column + " is blank there. A blank is never taken as zero.";
     } else if (why == "error_cell") {
