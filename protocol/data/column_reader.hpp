@@ -42,8 +42,8 @@ class ColumnReader {
   ColumnReader(const Places& places, const CellRules& rules, RowsLeftOut& left_out, std::vector<Note>& notes)
       : places_(places), rules_(rules), left_out_(left_out), notes_(notes) {}
   ReadColumn read(const Column& column, Holds holds);
-  /// Exposure 0 with count 0 leaves the row out; with a count above 0 it is refused.
-  void settle_zero_exposures(const ReadColumn& exposure, const ReadColumn* count);
+  /// Exposure 0 with count 0 leaves the row out, if so wanted; with a count above 0 it is refused.
+  void settle_zero_exposures(const ReadColumn& exposure, const ReadColumn* count, bool leave_out);
 
  private:
   void read_numbers(ReadColumn& read);

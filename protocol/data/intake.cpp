@@ -148,12 +148,14 @@ void take_in(const Question& question, const Table& table, const Casting& castin
   }
   // A count and its exposure are judged together: nothing observed and nothing seen is no row.
   for (std::size_t i = 0; i < casting.roles.size(); ++i) {
-    if (question.roles[i].holds != Holds::exposure || !casting.roles[i]) continue;
+    const Holds holds = question.roles[i].holds;
+    if ((holds != Holds::exposure && holds != Holds::exposure_or_0) || !casting.roles[i]) continue;
+    // Its count is the one declared last before it: a past's exposure goes with the past's count.
     const ReadColumn* count = nullptr;
-    for (std::size_t j = 0; j < casting.roles.size(); ++j) {
+    for (std::size_t j = 0; j < i; ++j) {
       if (question.roles[j].holds == Holds::count && casting.roles[j]) count = &role_columns[j];
     }
-    reader.settle_zero_exposures(role_columns[i], count);
+    reader.settle_zero_exposures(role_columns[i], count, holds == Holds::exposure);
   }
   settle_totals(question, role_columns, places, asked.cells.totals, left_out, notes);
   left_out.tell(notes, places);

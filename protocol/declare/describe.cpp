@@ -15,8 +15,9 @@ const char* style_name(Style style) {
 
 const char* holds_name(Holds holds) {
   static constexpr const char* names[] = {
-      "count",  "exposure", "number above 0", "number from 0",
-      "number", "levels",   "label",          "numbers or levels in order"};
+      "count",          "exposure", "number above 0", "number from 0",
+      "number",         "levels",   "label",          "numbers or levels in order",
+      "exposure from 0"};
   return names[static_cast<std::size_t>(holds)];
 }
 

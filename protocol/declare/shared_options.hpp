@@ -32,6 +32,21 @@ OptionSpec spread(Spread A::*member) {
   return bind::choice("spread", member, "how much counts vary: as a Poisson's, or a multiple of it",
                       {{"poisson", Spread::poisson}, {"scaled", Spread::scaled}});
 }
+/// For what is simulated: which random numbers, and how many draws.
+template <class A>
+OptionSpec seed(double A::*member) {
+  auto spec = bind::number("seed", member, "which stream of random numbers; the same seed, the same answer")
+                  .from(0)
+                  .to(9007199254740992.0);
+  spec.type = "whole";
+  return spec;
+}
+template <class A>
+OptionSpec draws(double A::*member) {
+  auto spec = bind::number("draws", member, "how many random draws").from(1).to(1e7);
+  spec.type = "whole";
+  return spec;
+}
 /// The ten ways to limits of one rate, the exact ones first.
 std::vector<std::pair<std::string, RateMethod>> rate_methods();
 /// Name and publication of a way to limits of one rate.

@@ -25,8 +25,9 @@ enum class Holds {
   not_below_0,
   number,
   levels,
-  label,  ///< text; a blank keeps its row
-  order   ///< numbers, or levels in order of first appearance
+  label,         ///< text; a blank keeps its row
+  order,         ///< numbers, or levels in order of first appearance
+  exposure_or_0  ///< as exposure, but a row with 0 and a count of 0 stays: what is not observed there matters
 };
 
 struct RoleSpec {

@@ -184,7 +184,9 @@ std::string answer_text(const Question& question, const Answer& answer, const Wo
   if (want("heads") && tables) write_heads(out, question, answer, wording);
   if (want("shown") && tables) write_shown(out, question, answer);
   const std::string& headline = answer.headline.empty() ? question.headline : answer.headline;
-  if (want("headline") && !headline.empty()) out.key("headline").text(headline);
+  const bool has_headline = std::any_of(answer.figures.begin(), answer.figures.end(),
+                                        [&](const auto& figure) { return figure.first == headline; });
+  if (want("headline") && has_headline) out.key("headline").text(headline);
   if (want("picture") && answer.picture) write_picture(out, *answer.picture);
   if (want("method") && !question.service) {
     out.key("method").open('[');

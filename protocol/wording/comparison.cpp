@@ -54,9 +54,8 @@ std::string say_comparison(const Wording& wording, const SaidComparison& said) {
             (no_limits ? "without limits by this method."
                        : wording.limits(said.ratio, said.ratio_low, said.ratio_high) + level + ".");
   }
-  const std::string p = "p " + std::string(said.p_value < 0.0001 || said.p_value > 0.99 ? "" : "= ") +
-                        p_text(said.p_value) + ", " + said.test +
-                        (said.direction == Direction::either ? "" : ", one-sided");
+  const std::string p =
+      p_said(said.p_value) + ", " + said.test + (said.direction == Direction::either ? "" : ", one-sided");
   if (said.p_value < said.level) {
     text += " Chance alone is an unlikely explanation (" + p + ").";
     const double extra = d.count1 - d.count0 / d.exposure0 * d.exposure1;

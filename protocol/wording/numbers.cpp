@@ -80,6 +80,8 @@ std::string p_text(double p) {
   return p < 0.001 ? fixed_text(p, 4) : p < 0.1 ? fixed_text(p, 3) : fixed_text(p, 2);
 }
 
+std::string p_said(double p) { return "p " + std::string(p < 0.0001 || p > 0.99 ? "" : "= ") + p_text(p); }
+
 RoundedLimits round_limits(double value, double low, double high) {
   const bool both = std::isfinite(low) && std::isfinite(high) && high > low;
   const double width = both ? high - low : 0;

@@ -20,6 +20,8 @@ std::string given_text(double value);
 std::string percent_text(double share);
 /// "0.031", "less than 0.0001", "more than 0.99".
 std::string p_text(double p);
+/// "p = 0.031", "p less than 0.0001".
+std::string p_said(double p);
 
 /// An estimate between its limits, each rounded to what the width of the limits supports.
 struct RoundedLimits {

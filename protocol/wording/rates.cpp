@@ -98,8 +98,8 @@ Note scaled_note(const Dispersion& spread, double phi) {
   return {"dispersion", std::move(text)};
 }
 
-void note_dispersion(const Dispersion& spread, bool groups, const Wording& wording,
-                     std::vector<Note>& notes) {
+void note_dispersion(const Dispersion& spread, bool groups, const Wording& wording, std::vector<Note>& notes,
+                     const std::string& remedy) {
   if (!(spread.df > 0) || std::isnan(spread.phi)) return;
   const double p = dispersion_p(spread);
   if (p >= 0.01 || spread.phi <= 1) return;
@@ -109,7 +109,7 @@ void note_dispersion(const Dispersion& spread, bool groups, const Wording& wordi
                        " times as much as Poisson counts would (chance of so much: " + p_text(p) + "). " +
                        (groups ? "These limits are then too narrow; "
                                : "The common rate's limits are then too narrow; ") +
-                       R"("spread":"scaled" allows for it. Perhaps )" + wording.events() +
+                       remedy + " Perhaps " + wording.events() +
                        " come in clusters, or the rows differ in ways not looked at."});
 }
 

@@ -29,8 +29,9 @@ std::string method_words(RateMethod method, bool scaled);
 
 Note no_exposure_note(std::size_t rows);
 Note scaled_note(const Dispersion& spread, double phi);
-/// Where rows vary plainly more than Poisson counts (chance below 0.01).
-void note_dispersion(const Dispersion& spread, bool groups, const Wording& wording, std::vector<Note>& notes);
+/// Where rows vary plainly more than Poisson counts (chance below 0.01); `remedy` says what allows for it.
+void note_dispersion(const Dispersion& spread, bool groups, const Wording& wording, std::vector<Note>& notes,
+                     const std::string& remedy = R"("spread":"scaled" allows for it.)");
 void note_small_count(double count, const Wording& wording, std::vector<Note>& notes);
 void note_large_sum(double count, std::vector<Note>& notes);
 /// Where the method has no value: says so and names one that has.

@@ -24,11 +24,13 @@ const std::vector<double>* numbers_of(const OutTable& table, const std::string& 
   return nullptr;
 }
 
-/// The estimate whose limit `name` is, with the spec that says so.
-const ColumnSpec* limit_of(const TableSpec* spec, const std::string& name) {
+/// The estimate whose limit `name` is, with the spec that says so. Of several estimates with limits of one
+/// name, the table (where given) has only one.
+const ColumnSpec* limit_of(const TableSpec* spec, const std::string& name, const OutTable* table = nullptr) {
   if (!spec) return nullptr;
   for (const auto& column : spec->columns) {
-    if (column.low == name || column.high == name) return &column;
+    if (column.low != name && column.high != name) continue;
+    if (!table || numbers_of(*table, column.name)) return &column;
   }
   return nullptr;
 }
@@ -59,6 +61,9 @@ std::string shown_number(double value, Style style) {
       return percent_text(std::round(value * 1000) / 1000);
     case Style::log:
       return fixed_text(value, 3);
+    case Style::text:
+    case Style::level:
+      return number_text(value);  // a year has no thousands mark
     default:
       return significant_text(value, 3);
   }
@@ -77,7 +82,7 @@ std::vector<std::pair<std::string, std::vector<std::string>>> shown_columns(cons
       const auto& numbers = std::get<std::vector<double>>(cells);
       const ColumnSpec* column = find_column(spec, name);
       const Style style = column ? column->style : Style::number;
-      const ColumnSpec* estimate = column && !column->low.empty() ? column : limit_of(spec, name);
+      const ColumnSpec* estimate = column && !column->low.empty() ? column : limit_of(spec, name, &table);
       const auto* values = estimate ? numbers_of(table, estimate->name) : nullptr;
       const auto* lows = estimate ? numbers_of(table, estimate->low) : nullptr;
       const auto* highs = estimate ? numbers_of(table, estimate->high) : nullptr;
