@@ -44,10 +44,7 @@ void ColumnBuilder::tagged_number(double value) {
 void ColumnBuilder::text(std::string_view text) {
   if (only_spaces(text)) return other(tag::blank);
   if (!tagged_) start_tags();
-  const auto [at, fresh] =
-      interned_.try_emplace(std::string(text), static_cast<std::int32_t>(interned_.size()));
-  if (fresh) column_.texts.emplace_back(text);
-  column_.tags.push_back(at->second);
+  column_.tags.push_back(index_.find_or_add(text, column_.texts));
   if (!column_.numbers.empty()) column_.numbers.push_back(nan);
 }
 
@@ -62,6 +59,8 @@ void ColumnBuilder::packed(std::vector<double>&& values) {
   column_.numbers = std::move(values);
   const auto blanks =
       std::count_if(column_.numbers.begin(), column_.numbers.end(), [](double v) { return v != v; });
+  column_.infinite =
+      std::any_of(column_.numbers.begin(), column_.numbers.end(), [](double v) { return std::isinf(v); });
   if (blanks == 0) return;
   start_tags();
   column_.others = static_cast<std::size_t>(blanks);
@@ -84,9 +83,7 @@ void ColumnBuilder::packed(std::vector<std::string>&& levels, std::vector<std::i
         if (only_spaces(level)) {
           target = tag::blank;
         } else {
-          const auto [at, fresh] = interned_.try_emplace(level, static_cast<std::int32_t>(interned_.size()));
-          if (fresh) column_.texts.push_back(level);
-          target = at->second;
+          target = index_.find_or_add(level, column_.texts);
         }
       }
       code = target;
@@ -101,7 +98,7 @@ void ColumnBuilder::packed(std::vector<std::string>&& levels, std::vector<std::i
 Column ColumnBuilder::take(std::string name) {
   column_.name = std::move(name);
   column_.digest = column_digest(column_);
-  interned_.clear();
+  index_ = TextIndex();
   return std::move(column_);
 }
 

@@ -8,8 +8,9 @@
 #include <cstdint>
 #include <string>
 #include <string_view>
-#include <unordered_map>
 #include <vector>
+
+#include "engine/table/text_index.hpp"
 
 namespace countsel {
 
@@ -28,6 +29,7 @@ struct Column {
   std::vector<std::int32_t> tags;  ///< one per cell; empty if every cell is a number
   std::vector<std::string> texts;  ///< distinct texts in order of first appearance
   bool levels_only = false;        ///< sent as levels and codes: never a slope
+  bool infinite = false;           ///< holds an infinity, which only a packed column can
   std::uint64_t digest = 0;        ///< of the cells, not of the name; see column_digest
 
   std::size_t size() const { return tags.empty() ? numbers.size() : tags.size(); }
@@ -70,7 +72,7 @@ class ColumnBuilder {
 
   Column column_;
   bool tagged_ = false;
-  std::unordered_map<std::string, std::int32_t> interned_;
+  TextIndex index_;
 };
 
 }  // namespace countsel

@@ -29,57 +29,63 @@ std::size_t read_some(int descriptor, char* into, std::size_t room) {
 }  // namespace
 
 LineSource::LineSource(int descriptor, std::size_t longest_line)
-    : descriptor_(descriptor), longest_(longest_line), buffer_(buffer_size) {}
+    : descriptor_(descriptor), longest_(longest_line), buffer_(buffer_size) {
+  position_ = filled_ = stop_ = mark_ = buffer_.data();
+}
 
 LineSource::LineSource(std::string_view line)
     : descriptor_(-1),
       longest_(std::numeric_limits<std::size_t>::max()),
       buffer_(line.begin(), line.end()),
-      filled_(line.size()),
       ended_(true) {
   buffer_.push_back('\n');
+  std::replace(buffer_.begin(), buffer_.end(), '\0', '\x01');
+  position_ = buffer_.data();
+  filled_ = position_ + line.size();
   begin_line();
 }
 
+std::size_t LineSource::read_behind(std::size_t filled) {
+  char* into = buffer_.data() + filled;
+  const auto got = read_some(descriptor_, into, buffer_.size() - filled);
+  ended_ = got == 0;
+  if (std::memchr(into, '\0', got)) std::replace(into, into + got, '\0', '\x01');
+  return filled + got;
+}
+
 bool LineSource::refill() {
-  if (recording_) record_.append(buffer_.data() + record_from_, filled_ - record_from_);
-  record_from_ = 0;
-  length_ += filled_ - mark_;
-  mark_ = position_ = filled_ = stop_ = 0;
-  if (ended_) return false;
-  filled_ = read_some(descriptor_, buffer_.data(), buffer_.size());
-  ended_ = filled_ == 0;
-  return !ended_;
+  if (recording_) record_.append(record_from_, filled_);
+  length_ += static_cast<std::size_t>(filled_ - mark_);
+  record_from_ = mark_ = position_ = filled_ = stop_ = buffer_.data();
+  if (!ended_) filled_ += read_behind(0);
+  return position_ != filled_;
 }
 
 void LineSource::set_stop() {
-  const auto* from = buffer_.data() + position_;
-  const auto* newline = static_cast<const char*>(std::memchr(from, '\n', filled_ - position_));
-  stop_ = newline ? static_cast<std::size_t>(newline - buffer_.data()) : filled_;
-  const std::size_t allowed = longest_ - std::min(longest_, length_ + (position_ - mark_));
-  if (stop_ - position_ > allowed) stop_ = position_ + allowed;
+  const auto bytes = static_cast<std::size_t>(filled_ - position_);
+  const auto* newline = static_cast<const char*>(std::memchr(position_, '\n', bytes));
+  stop_ = newline ? newline : filled_;
+  const std::size_t before = length_ + static_cast<std::size_t>(position_ - mark_);
+  const std::size_t allowed = longest_ - std::min(longest_, before);
+  if (static_cast<std::size_t>(stop_ - position_) > allowed) stop_ = position_ + allowed;
 }
 
 bool LineSource::more_of_line() {
   while (position_ == filled_) {
     if (!refill()) return false;
     set_stop();
-    if (position_ < stop_) return true;
+    if (position_ != stop_) return true;
   }
-  too_long_ = too_long_ || buffer_[position_] != '\n';
+  too_long_ = too_long_ || *position_ != '\n';
   return false;
 }
 
 void LineSource::skip_line() {
   while (inside_) {
-    const auto* from = buffer_.data() + position_;
-    const auto* newline = static_cast<const char*>(std::memchr(from, '\n', filled_ - position_));
-    if (newline) {
-      position_ = static_cast<std::size_t>(newline - buffer_.data()) + 1;
-      inside_ = false;
-    } else if (!refill()) {
-      inside_ = false;
-    }
+    const auto bytes = static_cast<std::size_t>(filled_ - position_);
+    const auto* newline = static_cast<const char*>(std::memchr(position_, '\n', bytes));
+    if (newline) position_ = newline + 1;
+    inside_ = !newline && refill();
   }
 }
 
@@ -93,16 +99,15 @@ void LineSource::begin_line() {
 
 void LineSource::pass_byte_order_mark() {
   constexpr std::string_view mark = "\xEF\xBB\xBF";
-  const auto begins = [&](std::size_t bytes) {
-    return std::string_view(buffer_.data(), bytes) == mark.substr(0, bytes);
+  const auto bytes = [&] { return static_cast<std::size_t>(filled_ - buffer_.data()); };
+  const auto begins = [&](std::size_t size) {
+    return std::string_view(buffer_.data(), size) == mark.substr(0, size);
   };
   // Wait for the rest only of what may be a mark: any other line must be answered at once.
-  while (!ended_ && filled_ < mark.size() && begins(filled_)) {
-    const auto got = read_some(descriptor_, buffer_.data() + filled_, buffer_.size() - filled_);
-    filled_ += got;
-    ended_ = got == 0;
+  while (!ended_ && bytes() < mark.size() && begins(bytes())) {
+    filled_ = buffer_.data() + read_behind(bytes());
   }
-  if (filled_ >= mark.size() && begins(mark.size())) position_ = mark.size();
+  if (bytes() >= mark.size() && begins(mark.size())) position_ += mark.size();
 }
 
 bool LineSource::next_line() {
@@ -130,7 +135,7 @@ void LineSource::record() {
 std::string LineSource::recorded() {
   if (!recording_) return {};
   recording_ = false;
-  record_.append(buffer_.data() + record_from_, position_ - record_from_);
+  record_.append(record_from_, position_);
   return std::move(record_);
 }
 

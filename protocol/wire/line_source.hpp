@@ -28,12 +28,13 @@ class LineSource {
   bool line_too_long() const { return too_long_; }
 
   /// At the end of the current line (or of its allowed length)?
-  bool at_end() { return position_ == stop_ && !more_of_line(); }
-  char current() const {
-    // The parser would take a NUL for the end of its input; a control character it refuses.
-    const char c = buffer_[position_];
-    return c == '\0' ? '\x01' : c;
+  bool at_end() {
+    if (position_ != stop_) [[likely]]
+      return false;
+    return !more_of_line();
   }
+  /// A NUL is given as another control character, which the parser refuses; it would end at a NUL.
+  char current() const { return *position_; }
   void advance() { ++position_; }
 
   /// Starts to remember what is read; `recorded` is what was read since, and stops it.
@@ -41,21 +42,23 @@ class LineSource {
   std::string recorded();
 
  private:
+  std::size_t read_behind(std::size_t filled);
   bool refill();
   void begin_line();
   void pass_byte_order_mark();
   void set_stop();
-  bool more_of_line();
+  [[gnu::cold]] bool more_of_line();
 
   int descriptor_;
   std::size_t longest_;
   std::vector<char> buffer_;
-  std::size_t position_ = 0, filled_ = 0;
-  std::size_t stop_ = 0;    // up to where the buffer surely holds bytes of this line
-  std::size_t mark_ = 0;    // where counting of this line last started in the buffer
+  const char* position_;
+  const char* filled_;      // end of what was read
+  const char* stop_;        // up to where the buffer surely holds bytes of this line
+  const char* mark_;        // where counting of this line last started in the buffer
   std::size_t length_ = 0;  // bytes of this line before the mark
+  const char* record_from_ = nullptr;
   std::string record_;
-  std::size_t record_from_ = 0;
   bool recording_ = false;
   bool ended_ = false, first_ = true, too_long_ = false, inside_ = false;
 };
