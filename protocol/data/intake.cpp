@@ -50,6 +50,32 @@ void check_lengths(const Table& table, const Places& places) {
   (void)places;
 }
 
+/// Where a question takes one set of roles or another, one of them must be there.
+void check_either(const Question& question, const Casting& casting) {
+  if (question.either.empty()) return;
+  const auto given = [&](const std::string& name) {
+    for (std::size_t i = 0; i < question.roles.size(); ++i)
+      if (question.roles[i].name == name) return casting.roles[i] != nullptr;
+    return false;
+  };
+  std::string sets, begun;
+  for (const auto& set : question.either) {
+    std::string missing, whole;
+    bool any = false;
+    for (const auto& name : set) {
+      any |= given(name);
+      whole += (whole.empty() ? "" : " and ") + name;
+      if (!given(name)) missing += (missing.empty() ? "" : " and ") + name;
+    }
+    if (missing.empty()) return;
+    if (any && begun.empty()) begun = missing;
+    sets += (sets.empty() ? "" : ", or ") + whole;
+  }
+  throw Refusal(Code::missing,
+                question.name + " needs " + sets + "." + (begun.empty() ? "" : " Missing is " + begun + "."),
+                {}, "Give them directly, or name the columns in of.roles.");
+}
+
 /// Rows that `of.only` keeps; empty vector and false: all.
 bool keep_only(const Table& table, const Json& rest, std::vector<char>& keep, std::vector<Note>& notes) {
   const auto only = rest.find("only");
@@ -110,6 +136,7 @@ Casting cast_roles(const Question& question, const Table& table, const Json& res
         given ? "Name a column for it in of.roles." : "Name the columns in of.roles, or give it directly.";
     throw Refusal(Code::missing, question.name + " needs the role " + missing + ".", {}, hint);
   }
+  check_either(question, casting);
   return casting;
 }
 

@@ -31,6 +31,7 @@ Json describe(const Question& question) {
                                  {"holds", holds_name(role.holds)},
                                  {"doc", role.doc}});
   }
+  if (!question.either.empty()) document["either"] = question.either;
   const auto defaults = question.make();
   document["options"] = Json::array();
   for (const auto& option : question.options) {

@@ -22,10 +22,11 @@ struct Question {
   std::vector<Source> sources;
   std::string headline;
   std::vector<std::string> examples;
-  bool service = false;              ///< about the server, not about rates
-  bool light = false;                ///< within about a millisecond at two thousand rows
-  bool takes_columns = false;        ///< columns without a role are used too
-  std::vector<std::string> of_keys;  ///< small keys of `of` that a service reads
+  bool service = false;                          ///< about the server, not about rates
+  bool light = false;                            ///< within about a millisecond at two thousand rows
+  bool takes_columns = false;                    ///< columns without a role are used too
+  std::vector<std::vector<std::string>> either;  ///< sets of roles of which one must be given whole
+  std::vector<std::string> of_keys;              ///< small keys of `of` that a service reads
   std::function<std::unique_ptr<Asked>()> make;
   std::function<Answer(Asked&, Context&)> answer;
   /// Columns beside the roles that are used, with what they must hold; asked once the options are read.
@@ -48,6 +49,7 @@ struct Declaration {
                                                               std::vector<Note>&) = nullptr;
   std::vector<std::string> examples = {};
   bool light = false;
+  std::vector<std::vector<std::string>> either = {};
 };
 
 /// The options about cells that every question with data has.
@@ -67,6 +69,7 @@ Question question(Declaration<A> declared) {
   made.headline = std::move(declared.headline);
   made.examples = std::move(declared.examples);
   made.light = declared.light;
+  made.either = std::move(declared.either);
   made.make = [] { return std::make_unique<A>(); };
   made.answer = [answer = declared.answer](Asked& asked, Context& context) {
     return answer(static_cast<A&>(asked), context);
