@@ -89,7 +89,8 @@ std::vector<Finding> exposure_jumps(const AuditTable& table) {
     series.logs.push_back(std::log(table.exposures[i]));
   }
   std::vector<Finding> findings;
-  for (const auto& [code, series] : all) {
+  for (const auto& each : all) {
+    const Series& series = each.second;
     const std::vector<Step> steps = steps_in(series);
     std::vector<Finding> jumps;
     find_jumps(series, periods ? period_factor : unit_factor, periods, jumps);
