@@ -101,6 +101,12 @@ std::optional<std::size_t> dense_place(const Layout& layout, const Basis& basis,
   return layout.places[coefficient].dense;
 }
 
+double column_size(const Layout& layout, const Basis& basis, std::size_t coefficient) {
+  const Layout::Place& place = layout.places[coefficient];
+  const std::size_t dense = place.dense ? *place.dense : layout.blocks[place.block].multiplier;
+  return dense == 0 ? 1 : std::fabs(basis.centre[dense]) + 1 / basis.scale[dense];
+}
+
 Combination working_column(const Layout& layout, const Basis& basis, std::size_t coefficient) {
   if (basis.combined_of[coefficient] >= 0) {
     const Combined& combined = basis.combined[static_cast<std::size_t>(basis.combined_of[coefficient])];

@@ -62,6 +62,9 @@ Basis first_basis(const Layout& layout, const Work& work);
 /// The dense column of the blocks that a coefficient's working column is, if it is one.
 std::optional<std::size_t> dense_place(const Layout& layout, const Basis& basis, std::size_t coefficient);
 
+/// About the largest size of a coefficient's raw column in a row.
+double column_size(const Layout& layout, const Basis& basis, std::size_t coefficient);
+
 /// A working column as a combination of raw design columns.
 Combination working_column(const Layout& layout, const Basis& basis, std::size_t coefficient);
 

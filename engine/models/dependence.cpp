@@ -30,7 +30,7 @@ struct Remainder {
 
 /// One pass: how large the remainder is, and its weighted products with the working columns.
 Remainder measure(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
-                  const Eigen::VectorXd& gamma, PassRequest request, const RawForm& form,
+                  const Eigen::VectorXd& gamma, PassRequest request, const RawForm& form, double floor,
                   Eigen::VectorXd& products, const Work& work) {
   const std::size_t blocks = (data.rows + block_rows - 1) / block_rows;
   std::vector<Remainder> by_block(blocks);
@@ -43,7 +43,8 @@ Remainder measure(const Layout& layout, const Basis& basis, const RowData& data,
         continue;
       }
       const FormValue value = evaluate(layout, form, block.start + r);
-      if (value.magnitude > 0) own.worst = std::max(own.worst, std::fabs(value.value) / value.magnitude);
+      if (value.value != 0)
+        own.worst = std::max(own.worst, std::fabs(value.value) / (value.magnitude + floor));
       own.square += information[r] * value.value * value.value;
       own.weight += information[r];
       score[r] = information[r] * value.value;
@@ -92,6 +93,15 @@ bool vanishes_by_code(const Layout& layout, const Sums& sums, Combination& remai
   return true;
 }
 
+/// Multiples too small to matter in any row are rounding left by the steps towards the combination.
+void drop_rounding(const Layout& layout, const Basis& basis, Combination& combination) {
+  const double own =
+      std::fabs(combination[0].second.value()) * column_size(layout, basis, combination[0].first);
+  std::erase_if(combination, [&](const auto& part) {
+    return std::fabs(part.second.value()) * column_size(layout, basis, part.first) < 1e-11 * own;
+  });
+}
+
 }  // namespace
 
 Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
@@ -100,6 +110,7 @@ Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Fa
   for (;;) {
     settled.sums = run_pass(layout, basis, data, family, gamma, request, work);
     settled.information = assemble(layout, basis, settled.sums);
+    if (!settled.information.full.allFinite() || !settled.information.diagonal.allFinite()) return settled;
     settled.factor = factorise(settled.information, layout.coefficients, doubtful_share);
     std::vector<std::size_t> doubtful = settled.factor.dependent;
     settled.condition = std::max(settled.condition, 1 / std::sqrt(settled.factor.least_pivot));
@@ -119,17 +130,21 @@ Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Fa
         };
         take_away(explained);
         vanishes = vanishes_by_code(layout, settled.sums, remainder);
+        // A remainder of this size is rounding even in a row where the column itself is 0.
+        const double floor = 1e-12 * std::fabs(remainder.front().second.value()) *
+                             column_size(layout, basis, remainder.front().first);
         // Two corrections bring the remainder from the factor's digits to those of double-double.
         Eigen::VectorXd products;
         for (int round = 0; round < 3 && !vanishes; ++round) {
-          size = measure(layout, basis, data, family, gamma, request, make_form(layout, remainder), products,
-                         work);
+          size = measure(layout, basis, data, family, gamma, request, make_form(layout, remainder), floor,
+                         products, work);
           if (round < 2) take_away(solve(settled.factor, products));
         }
-        vanishes = vanishes || size.worst <= rounding_share;
+        vanishes = vanishes || size.worst <= rounding_share || size.square == 0;
       }
       gamma[j] = 0;
       if (vanishes) {
+        drop_rounding(layout, basis, remainder);
         const DoubleDouble own = remainder.front().second;
         for (auto& [k, multiple] : remainder) multiple = DoubleDouble(multiple.value() / own.value());
         basis.active[j] = 0;

@@ -62,8 +62,7 @@ void look_at_columns(FittedModel& model, GlmFit& fit, double& condition, const W
     fit.status[one.coefficient] = CoefficientStatus::aliased;
     Alias alias{one.coefficient, {}};
     for (std::size_t i = 1; i < one.combination.size(); ++i)
-      if (std::fabs(one.combination[i].second.value()) > 1e-12)
-        alias.combination.emplace_back(one.combination[i].first, -one.combination[i].second.value());
+      alias.combination.emplace_back(one.combination[i].first, -one.combination[i].second.value());
     fit.aliases.push_back(std::move(alias));
   }
   std::sort(fit.aliases.begin(), fit.aliases.end(),
@@ -73,7 +72,7 @@ void look_at_columns(FittedModel& model, GlmFit& fit, double& condition, const W
   request.aim = Aim::event_rows;
   const Settled seen = settle(model.layout, events, model.data, *model.family, gamma, request, work);
   if (seen.left_out.empty()) return;
-  fit.separated_rows = separated_rows(model.layout, model.data, seen.left_out, work);
+  fit.separated_rows = separated_rows(model.layout, model.basis, model.data, seen.left_out, work);
   if (fit.separated_rows.empty()) return;
 
   const GlmData& source = model.source;
@@ -85,7 +84,8 @@ void look_at_columns(FittedModel& model, GlmFit& fit, double& condition, const W
   request.aim = Aim::all_rows;
   const Settled rest = settle(model.layout, model.basis, model.data, *model.family, gamma, request, work);
   mark(model, rest.left_out);
-  const auto status = infinite_coefficients(model.layout, fit.separated_rows, rest.left_out, work);
+  const auto status =
+      infinite_coefficients(model.layout, model.basis, fit.separated_rows, rest.left_out, work);
   for (std::size_t k = 0; k < status.size(); ++k)
     if (status[k] != CoefficientStatus::finite) fit.status[k] = status[k];
 }
@@ -195,6 +195,14 @@ GlmFit fit_poisson(const Design& design, const GlmData& data, const Work& work) 
   model->gamma = std::move(result.gamma);
   model->information = std::move(result.last.information);
   model->factor = std::move(result.last.factor);
+  if (model->factor.coefficients == 0) {
+    fit.coefficients.setConstant(nan);
+    fit.errors.setConstant(nan);
+    fit.covariance.setConstant(nan);
+    fit.loglik = fit.deviance = fit.pearson = fit.null_deviance = fit.null_loglik = nan;
+    model->gamma.resize(0);
+    return fit;
+  }
   mark_shifts(*model);
   const Sums& sums = result.last.sums;
   fit.deviance = sums.deviance;

@@ -107,6 +107,8 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     const std::size_t combined_before = basis.combined.size();
     result.last = settle(layout, basis, data, family, result.gamma, request, work);
     const VectorXd score = assemble_score(layout, basis, result.last.sums);
+    const bool usable = score.allFinite() && !result.last.factor.rest.empty();
+    if (!usable && step.size() == 0) break;
     const bool changed = basis.combined.size() != combined_before || !result.last.left_out.empty();
     if (changed) {
       // The working columns are others now: the step behind means nothing.
@@ -115,7 +117,7 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     }
     if (step.size() > 0) {
       const double rise = score.dot(step);
-      if (!score.allFinite() || !std::isfinite(rise) || rise < -rise_before) {
+      if (!usable || !std::isfinite(rise) || rise < -rise_before) {
         const double cut =
             std::isfinite(rise) ? std::clamp(rise_before / (rise_before - rise), 0.1, 0.5) : 0.1;
         share *= cut;
@@ -147,7 +149,8 @@ NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, con
     whole_before = true;
   }
   result.passes += passes_before;
-  if (!result.converged && step.size() > 0) result.worst = most_moved(result.last.factor, step);
+  if (!result.converged && step.size() > 0 && result.last.factor.coefficients > 0)
+    result.worst = most_moved(result.last.factor, step);
   // Errors and fit at the estimate itself: on few rows always, else where the last pass was not near enough.
   if (data.rows < cheap_rows || !request.fit || !result.converged || result.last_step > 1e-3) {
     request.fit = true;

@@ -18,12 +18,13 @@ constexpr double negligible = 1e-11;
 /// A row's values in the vanishing combinations, largest scaled to 1, rounded so that equal rows are equal.
 using Pattern = std::vector<std::pair<std::size_t, double>>;
 
-Pattern pattern_of(const Layout& layout, const std::vector<RawForm>& forms, std::size_t row) {
+Pattern pattern_of(const Layout& layout, const std::vector<RawForm>& forms, const std::vector<double>& floors,
+                   std::size_t row) {
   Pattern pattern;
   double largest = 0;
   for (std::size_t j = 0; j < forms.size(); ++j) {
     const FormValue value = evaluate(layout, forms[j], row);
-    if (std::fabs(value.value) <= negligible * value.magnitude) continue;
+    if (std::fabs(value.value) <= negligible * value.magnitude + floors[j]) continue;
     pattern.emplace_back(j, value.value);
     largest = std::max(largest, std::fabs(value.value));
   }
@@ -37,15 +38,19 @@ struct Patterns {
   std::vector<std::ptrdiff_t> of_row;  ///< of the rows asked about; -1: all zero
 };
 
-Patterns find_patterns(const Layout& layout, const std::vector<LeftOut>& vanishing,
+Patterns find_patterns(const Layout& layout, const Basis& basis, const std::vector<LeftOut>& vanishing,
                        const std::vector<std::size_t>& rows, const Work& work) {
   std::vector<RawForm> forms;
-  for (const LeftOut& v : vanishing) forms.push_back(make_form(layout, v.combination));
+  std::vector<double> floors;
+  for (const LeftOut& v : vanishing) {
+    forms.push_back(make_form(layout, v.combination));
+    floors.push_back(1e-12 * column_size(layout, basis, v.coefficient));
+  }
   Patterns patterns;
   std::map<Pattern, std::ptrdiff_t> known;
   for (std::size_t i = 0; i < rows.size(); ++i) {
     if (i % 1024 == 0) work.progress.check();
-    Pattern pattern = pattern_of(layout, forms, rows[i]);
+    Pattern pattern = pattern_of(layout, forms, floors, rows[i]);
     if (pattern.empty()) {
       patterns.of_row.push_back(-1);
       continue;
@@ -116,12 +121,12 @@ VectorXd nonnegative_remainder(const MatrixXd& columns, const VectorXd& target, 
   return left;
 }
 
-std::vector<std::size_t> separated_rows(const Layout& layout, const RowData& data,
+std::vector<std::size_t> separated_rows(const Layout& layout, const Basis& basis, const RowData& data,
                                         const std::vector<LeftOut>& vanishing, const Work& work) {
   std::vector<std::size_t> rows;
   for (std::size_t i = 0; i < data.rows; ++i)
     if (data.count[i] == 0 && (!data.weight || data.weight[i] > 0)) rows.push_back(i);
-  const Patterns patterns = find_patterns(layout, vanishing, rows, work);
+  const Patterns patterns = find_patterns(layout, basis, vanishing, rows, work);
   const std::size_t size = vanishing.size();
   std::vector<char> gone(patterns.distinct.size(), 0);
   for (;;) {
@@ -162,11 +167,11 @@ std::vector<std::size_t> separated_rows(const Layout& layout, const RowData& dat
   return separated;
 }
 
-std::vector<CoefficientStatus> infinite_coefficients(const Layout& layout,
+std::vector<CoefficientStatus> infinite_coefficients(const Layout& layout, const Basis& basis,
                                                      const std::vector<std::size_t>& separated,
                                                      const std::vector<LeftOut>& vanishing,
                                                      const Work& work) {
-  const Patterns patterns = find_patterns(layout, vanishing, separated, work);
+  const Patterns patterns = find_patterns(layout, basis, vanishing, separated, work);
   const std::size_t size = vanishing.size();
   std::vector<std::size_t> all(patterns.distinct.size());
   for (std::size_t p = 0; p < all.size(); ++p) all[p] = p;
@@ -182,7 +187,6 @@ std::vector<CoefficientStatus> infinite_coefficients(const Layout& layout,
   std::vector<VectorXd> parts(layout.coefficients);
   for (std::size_t j = 0; j < size; ++j)
     for (const auto& [k, multiple] : vanishing[j].combination) {
-      if (std::fabs(multiple.value()) <= negligible) continue;
       if (parts[k].size() == 0) parts[k] = VectorXd::Zero(static_cast<Index>(size));
       parts[k][j] = multiple.value();
     }

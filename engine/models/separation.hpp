@@ -17,12 +17,12 @@ namespace countsel {
 
 /// The rows (from 0) that are separated, in order. `vanishing` are combinations of raw columns that are 0 in
 /// every row with events.
-std::vector<std::size_t> separated_rows(const Layout& layout, const RowData& data,
+std::vector<std::size_t> separated_rows(const Layout& layout, const Basis& basis, const RowData& data,
                                         const std::vector<LeftOut>& vanishing, const Work& work);
 
 /// Where coefficients go, given combinations that vanish on all rows that are not separated: those in none of
 /// them stay finite, the others rise, fall, or are not determined.
-std::vector<CoefficientStatus> infinite_coefficients(const Layout& layout,
+std::vector<CoefficientStatus> infinite_coefficients(const Layout& layout, const Basis& basis,
                                                      const std::vector<std::size_t>& separated,
                                                      const std::vector<LeftOut>& vanishing, const Work& work);
 

@@ -127,3 +127,33 @@ TEST_CASE("an aliased column is named with what it is made of") {
     CHECK(std::isnan(fit.coefficients[2]));
   }
 }
+
+TEST_CASE("shifts, scales, huge counts, exposures and near-dependences keep their digits") {
+  for (const Json& given : read_json("extreme_cases.json")) {
+    const std::string name = given["name"];
+    CAPTURE(name);
+    const std::vector<double> count = numbers(given["count"]), exposure = numbers(given["exposure"]);
+    std::vector<std::vector<double>> store;
+    for (const Json& column : given["columns"]) store.push_back(numbers(column));
+    std::vector<SourceColumn> columns;
+    std::vector<Term> terms;
+    for (std::size_t j = 0; j < store.size(); ++j) {
+      columns.push_back({"x" + std::to_string(j), store[j], {}, nullptr, std::nullopt});
+      terms.push_back(slope_of(j));
+    }
+    const Design design = make_design(columns, terms, count.size(), exposure);
+    const GlmFit fit = fit_poisson(design, {count, exposure, {}, {}, WeightsAre::frequency});
+    CHECK(fit.converged);
+    CHECK(fit.aliases.empty());
+    CAPTURE(fit.condition);
+    for (std::size_t k = 0; k < given["coef"].size(); ++k) {
+      CAPTURE(k);
+      const double se = number(given["se"][k]);
+      CHECK(digits(fit.coefficients[k], number(given["coef"][k]), 1e-2 * se) > 9);
+      CHECK(digits(fit.errors[k], se) > 7);
+    }
+    CHECK(digits(fit.loglik, number(given["loglik"])) > 11);
+    CHECK(digits(fit.deviance, number(given["deviance"])) > 9);
+    CHECK(digits(fit.pearson, number(given["pearson"])) > 9);
+  }
+}
