@@ -47,7 +47,9 @@ inline Table read_table(const std::string& name) {
 }
 
 inline double number(const std::string& text) { return std::strtod(text.c_str(), nullptr); }
-inline double number(const Json& value) { return value.is_string() ? number(value.get<std::string>()) : value.get<double>(); }
+inline double number(const Json& value) {
+  return value.is_string() ? number(value.get<std::string>()) : value.get<double>();
+}
 inline std::vector<double> numbers(const std::vector<std::string>& texts) {
   std::vector<double> values;
   for (const auto& text : texts) values.push_back(number(text));
@@ -114,7 +116,8 @@ struct Ready {
     if (!column_of.contains(key)) {
       const Levels& levels = level_store.try_emplace(name, table.at(name)).first->second;
       std::string reference = levels.first_sorted();
-      if (model.contains("reference") && model["reference"].contains(name)) reference = model["reference"][name];
+      if (model.contains("reference") && model["reference"].contains(name))
+        reference = model["reference"][name];
       column_of[key] = columns.size();
       columns.push_back({name, {}, levels.codes, &levels.names, reference});
     }
@@ -140,8 +143,7 @@ inline std::string case_name(const Ready& ready, const CoefficientRow& row) {
   const Term& term = ready.terms[*row.term];
   const std::vector<Term> parts = term.kind == Term::Kind::cross ? term.parts : std::vector<Term>{term};
   std::size_t combination = 0;
-  if (!columns.factors.empty())
-    combination = (*row.coefficient - columns.first) / columns.products.size();
+  if (!columns.factors.empty()) combination = (*row.coefficient - columns.first) / columns.products.size();
   std::size_t factor = 0;
   for (const Term& part : parts) {
     if (!name.empty()) name += ":";
@@ -151,7 +153,8 @@ inline std::string case_name(const Ready& ready, const CoefficientRow& row) {
     else if (part.kind == Term::Kind::power)
       name += column.name + "^" + std::to_string(static_cast<int>(part.to));
     else if (part.kind == Term::Kind::log)
-      name += "log(" + column.name + (part.plus != 0 ? "+" + std::to_string(static_cast<int>(part.plus)) : "") + ")";
+      name += "log(" + column.name +
+              (part.plus != 0 ? "+" + std::to_string(static_cast<int>(part.plus)) : "") + ")";
     else
       name += column.name;
   }
@@ -164,7 +167,8 @@ inline void make_ready(Ready& ready, const Json& given) {
   for (const auto& term : model["terms"]) ready.terms.push_back(ready.term(term, model));
   ready.count = numbers(ready.table.at(model["count"]));
   if (model.contains("exposure")) ready.exposure = numbers(ready.table.at(model["exposure"]));
-  if (model.contains("log_exposure_column")) ready.log_exposure = numbers(ready.table.at(model["log_exposure_column"]));
+  if (model.contains("log_exposure_column"))
+    ready.log_exposure = numbers(ready.table.at(model["log_exposure_column"]));
   if (model.contains("weights")) ready.weight = numbers(ready.table.at(model["weights"]));
   if (model.contains("cluster")) ready.cluster = Levels(ready.table.at(model["cluster"])).codes;
   ready.design = make_design(ready.columns, ready.terms, ready.count.size(), ready.exposure);

@@ -63,7 +63,7 @@ void check_finite_part(const GlmFit& fit, Ready& ready, const Json& part) {
   for (const char* figure : {"loglik", "deviance", "pearson"})
     if (part.contains(figure)) {
       CAPTURE(figure);
-      const double got = figure == std::string("loglik") ? fit.loglik
+      const double got = figure == std::string("loglik")     ? fit.loglik
                          : figure == std::string("deviance") ? fit.deviance
                                                              : fit.pearson;
       CHECK(digits(got, number(part[figure]), 1e-3) > 9);

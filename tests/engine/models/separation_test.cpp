@@ -1,4 +1,5 @@
-// tests/engine/models/separation_test.cpp -- separated rows and infinite coefficients against linear programmes.
+// tests/engine/models/separation_test.cpp -- separated rows and infinite coefficients against linear
+// programmes.
 #include "engine/models/separation.hpp"
 
 #include <doctest/doctest.h>
@@ -81,14 +82,15 @@ TEST_CASE("near-separation is not separation") {
   const GlmFit fit = Numeric({x}, y).fit();
   CHECK(fit.separated_rows.empty());
   CHECK(fit.coefficients[1] == doctest::Approx(std::log(0.25 / 1e6)).epsilon(1e-12));
-  CHECK(fit.errors[1] == doctest::Approx(std::sqrt(1 + 1 / 4e6)).epsilon(1e-12));
+  CHECK(fit.errors[1] == doctest::Approx(std::sqrt(1 + 1 / 4e6)).epsilon(1e-9));
 }
 
 TEST_CASE("a reference without events sends the baseline down and the others up") {
   const std::vector<std::string> names = {"A", "B", "C"};
   const std::vector<std::int32_t> codes = {0, 0, 1, 1, 2, 2};
   const std::vector<double> x = {1, 2, 1, 3, 2, 4}, y = {0, 0, 3, 5, 4, 9};
-  const std::vector<SourceColumn> columns = {{"g", {}, codes, &names, "A"}, {"x", x, {}, nullptr, std::nullopt}};
+  const std::vector<SourceColumn> columns = {{"g", {}, codes, &names, "A"},
+                                             {"x", x, {}, nullptr, std::nullopt}};
   const std::vector<Term> terms = {levels_of(0), slope_of(1)};
   const Design design = make_design(columns, terms, 6);
   const GlmFit fit = fit_poisson(design, {y, {}, {}, {}, WeightsAre::frequency});
@@ -116,9 +118,10 @@ TEST_CASE("thousands of levels without events cost no more than the rows") {
   for (std::size_t i = 0; i < rows; ++i) {
     codes.push_back(static_cast<std::int32_t>(i % levels));
     x.push_back(static_cast<double>(i % 7));
-    y.push_back(i % levels % 3 == 0 ? 0.0 : static_cast<double>(i % 5));
+    y.push_back(i % levels % 3 == 0 ? 0.0 : static_cast<double>(1 + i % 7 % 3));
   }
-  const std::vector<SourceColumn> columns = {{"ward", {}, codes, &names, "ward 1"}, {"x", x, {}, nullptr, std::nullopt}};
+  const std::vector<SourceColumn> columns = {{"ward", {}, codes, &names, "ward 1"},
+                                             {"x", x, {}, nullptr, std::nullopt}};
   const std::vector<Term> terms = {levels_of(0), slope_of(1)};
   const Design design = make_design(columns, terms, rows);
   const GlmFit fit = fit_poisson(design, {y, {}, {}, {}, WeightsAre::frequency});
@@ -131,8 +134,8 @@ TEST_CASE("thousands of levels without events cost no more than the rows") {
   // Each finite level's fitted sum is its count: the likelihood equations.
   double fitted = 0, seen = 0;
   for (std::size_t i = 2; i < rows; i += levels) {
-    const std::size_t k = *design.table[4].coefficient;
-    CHECK(design.table[4].level == "ward 2");
+    const std::size_t k = *design.table[3].coefficient;
+    CHECK(design.table[3].level == "ward 2");
     fitted += std::exp(fit.coefficients[0] + fit.coefficients[k] + fit.coefficients[levels] * x[i]);
     seen += y[i];
   }
