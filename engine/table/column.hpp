@@ -29,6 +29,7 @@ struct Column {
   std::vector<std::int32_t> tags;  ///< one per cell; empty if every cell is a number
   std::vector<std::string> texts;  ///< distinct texts in order of first appearance
   bool levels_only = false;        ///< sent as levels and codes: never a slope
+  bool doubtful_point = false;     ///< from a file, and every point in it could be a thousands mark
   bool infinite = false;           ///< holds an infinity, which only a packed column can
   std::uint64_t digest = 0;        ///< of the cells, not of the name; see column_digest
 

@@ -6,6 +6,7 @@
 #include <unordered_map>
 
 #include "protocol/data/cells.hpp"
+#include "protocol/wire/brief.hpp"
 #include "protocol/wording/words.hpp"
 
 namespace countsel {
@@ -18,17 +19,21 @@ bool holds_numbers(Holds holds) {
   return holds != Holds::levels && holds != Holds::label && holds != Holds::order;
 }
 
+constexpr std::size_t most_places = 20;
+
 /// Collects the places of one trouble, then refuses with all of them.
 struct Trouble {
-  std::vector<Place> places;
+  std::vector<Place> places;  ///< the first few
+  std::size_t cells = 0;
   void add(const std::string& column, std::size_t row) {
-    places.push_back({column, static_cast<std::int64_t>(row) + 1});
+    if (++cells <= most_places) places.push_back({column, static_cast<std::int64_t>(row) + 1});
   }
-  bool any() const { return !places.empty(); }
+  bool any() const { return cells > 0; }
+  std::size_t first_row() const { return static_cast<std::size_t>(places.front().row - 1); }
   [[noreturn]] void refuse(Code code, const Places& where, const std::string& what,
                            const std::string& hint) const {
     std::string text = where.say(places.front()) + " " + what;
-    if (places.size() > 1) text += " There are " + std::to_string(places.size()) + " such cells.";
+    if (cells > 1) text += " There are " + std::to_string(cells) + " such cells.";
     throw Refusal(code, text, places, hint);
   }
 };
@@ -46,10 +51,6 @@ const char* wanted(Holds holds) {
 }
 
 }  // namespace
-
-RowsLeftOut::RowsLeftOut(std::size_t rows, std::vector<char> keep, bool some) : rows_(rows) {
-  if (some) keep_ = std::move(keep);
-}
 
 void RowsLeftOut::leave_out(std::size_t row, const std::string& why, const std::string& column) {
   if (keep_.empty()) keep_.assign(rows_, 1);
@@ -69,6 +70,17 @@ std::size_t RowsLeftOut::kept() const {
   return keep_.empty() ? rows_ : static_cast<std::size_t>(std::count(keep_.begin(), keep_.end(), 1));
 }
 
+double RowsLeftOut::sum_of_left_out(std::span<const double> values) const {
+  double sum = 0;
+  for (const auto& [why, column, rows] : reasons_) {
+    for (const auto row : rows) {
+      const double value = values[static_cast<std::size_t>(row - 1)];
+      if (!std::isnan(value)) sum += value;
+    }
+  }
+  return sum;
+}
+
 std::vector<std::uint32_t> RowsLeftOut::indices() const {
   std::vector<std::uint32_t> indices;
   if (keep_.empty() || kept() == rows_) return indices;
@@ -78,22 +90,38 @@ std::vector<std::uint32_t> RowsLeftOut::indices() const {
   return indices;
 }
 
-void RowsLeftOut::tell(std::vector<Note>& notes, const Places&) const {
+void RowsLeftOut::tell(std::vector<Note>& notes, const Places& places) const {
   for (const auto& [why, column, rows] : reasons_) {
     Note note{why, "", {}};
-    const std::string were = rows.size() == 1 ? " was" : " were";
-    const std::string named = capital(row_list(rows)) + were + " left out: ";
-    if (why == "blank") {
-      note.text = named + column + " is blank there. A blank is never taken as zero.";
-    } else if (why == "error_cell") {
-      note.text = named + column + " holds an error there.";
-    } else if (why == "zero_exposure") {
-      note.text = named + column + " is 0 there and nothing was counted.";
-    } else {
-      note.text = named + "a total of the other rows.";
+    for (const auto row : rows) {
+      if (note.where.size() < most_places) note.where.push_back({column, row});
     }
-    for (std::size_t i = 0; i < rows.size() && i < 20; ++i) note.where.push_back({column, rows[i]});
+    const std::string at = places.list(note.where, rows.size());
+    note.text =
+        std::to_string(rows.size()) + (rows.size() == 1 ? " row was left out: " : " rows were left out: ");
+    if (why == "blank") {
+      note.text += column + " is blank in " + at + ". A blank is never taken as zero.";
+    } else if (why == "error_cell") {
+      note.text += column + " holds an error in " + at + ".";
+    } else if (why == "zero_exposure") {
+      note.text += column + " is 0 and nothing was counted in " + at + ".";
+    } else {
+      note.text += column + " is the total of the other rows in " + at + ".";
+    }
     notes.push_back(std::move(note));
+  }
+}
+
+/// An infinity can only have been packed; no column may hold one.
+void ColumnReader::check_infinities(const Column& column) {
+  if (!column.infinite) return;
+  Trouble trouble;
+  for (std::size_t row = 0; row < column.numbers.size(); ++row) {
+    if (std::isinf(column.numbers[row]) && left_out_.in(row)) trouble.add(column.name, row);
+  }
+  if (trouble.any()) {
+    trouble.refuse(Code::bad_value, places_, "is infinite, which no cell may be.",
+                   "A blank is packed as NaN.");
   }
 }
 
@@ -115,7 +143,7 @@ void ColumnReader::check_error_cells(const Column& column) {
     }
   }
   if (trouble.any()) {
-    trouble.refuse(Code::error_cell, places_, "is an error, " + first + ".",
+    trouble.refuse(Code::error_cell, places_, "is an error, " + brief(first) + ".",
                    R"(Mend the sheet, or leave such rows out with "error_cells":"skip".)");
   }
 }
@@ -141,10 +169,9 @@ void ColumnReader::convert_texts(ReadColumn& read) {
     }
   }
   if (astray.any()) {
-    const auto& text = column.texts[static_cast<std::size_t>(
-        column.tags[static_cast<std::size_t>(astray.places.front().row - 1)])];
+    const auto& text = column.texts[static_cast<std::size_t>(column.tags[astray.first_row()])];
     const auto reads = read_number(text, rules_).reads;
-    const std::string is = "is the text \"" + text + "\"";
+    const std::string is = "is the text \"" + brief(text) + "\"";
     switch (reads) {
       case Reads::decimal_comma:
         astray.refuse(Code::bad_value, places_, is + "; it looks like a decimal comma.",
@@ -169,6 +196,23 @@ void ColumnReader::convert_texts(ReadColumn& read) {
   }
 }
 
+/// A file that was held was read before anybody could say which mark is which.
+void ColumnReader::check_doubtful_point(const Column& column) {
+  const Marks marks = marks_of(rules_);
+  if (!column.doubtful_point || (marks.settled && marks.decimal == '.')) return;
+  if (marks.settled) {
+    throw Refusal(Code::bad_value,
+                  column.name + " was read with a decimal point when it was held; it cannot be read anew.",
+                  {{column.name, 0}},
+                  "Ask about the file itself, or write the numbers without thousands marks.");
+  }
+  notes_.push_back({"decimal_point",
+                    "The points in " + column.name +
+                        " were read as decimal points, though each could be a thousands mark; if so, say "
+                        R"("decimal":",".)",
+                    {{column.name, 0}}});
+}
+
 void ColumnReader::read_numbers(ReadColumn& read) {
   const Column& column = *read.column;
   if (column.levels_only) {
@@ -176,6 +220,7 @@ void ColumnReader::read_numbers(ReadColumn& read) {
                   "Column " + column.name + " was sent as levels; " + wanted(read.holds) + ".",
                   {{column.name, 0}}, "Send it as numbers.");
   }
+  check_doubtful_point(column);
   if (column.all_numbers()) return judge(read);
   Trouble booleans, nested;
   for (std::size_t row = 0; row < column.size(); ++row) {
@@ -227,7 +272,7 @@ void ColumnReader::judge(const ReadColumn& read) {
     trouble.add(read.column->name, row);
   }
   if (!trouble.any()) return;
-  const double first = values[static_cast<std::size_t>(trouble.places.front().row - 1)];
+  const double first = values[trouble.first_row()];
   const std::string is = "is " + number_text(first) + "; ";
   switch (read.holds) {
     case Holds::count:
@@ -251,6 +296,7 @@ void ColumnReader::judge(const ReadColumn& read) {
 
 ReadColumn ColumnReader::read(const Column& column, Holds holds) {
   ReadColumn read{.column = &column, .holds = holds, .numbers = {}};
+  check_infinities(column);
   check_error_cells(column);
   if (holds_numbers(holds)) {
     read_numbers(read);

@@ -11,12 +11,14 @@ namespace countsel {
 /// Which rows are still in, and why the others are not.
 class RowsLeftOut {
  public:
-  /// `keep` (may be empty: all) is what `of.only` chose.
-  RowsLeftOut(std::size_t rows, std::vector<char> keep, bool some);
+  /// `keep`: one flag per row, or empty: all are in.
+  RowsLeftOut(std::size_t rows, std::vector<char> keep) : rows_(rows), keep_(std::move(keep)) {}
 
   bool in(std::size_t row) const { return keep_.empty() || keep_[row]; }
   void leave_out(std::size_t row, const std::string& why, const std::string& column);
   std::size_t kept() const;
+  /// Sum over the rows left out here; those that `of.only` did not want are not among them.
+  double sum_of_left_out(std::span<const double> values) const;
   std::vector<std::uint32_t> indices() const;  ///< empty if all rows are kept
   /// One note per reason and column.
   void tell(std::vector<Note>& notes, const Places& places) const;
@@ -49,6 +51,8 @@ class ColumnReader {
   void read_numbers(ReadColumn& read);
   void convert_texts(ReadColumn& read);
   void judge(const ReadColumn& read);
+  void check_infinities(const Column& column);
+  void check_doubtful_point(const Column& column);
   void check_error_cells(const Column& column);
 
   const Places& places_;

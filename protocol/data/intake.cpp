@@ -3,52 +3,14 @@
 
 #include <algorithm>
 #include <cmath>
-#include <limits>
-#include <unordered_set>
 
 #include "protocol/data/column_reader.hpp"
+#include "protocol/data/columns.hpp"
 #include "protocol/data/totals.hpp"
-#include "protocol/declare/nearest.hpp"
+#include "protocol/wire/brief.hpp"
 
 namespace countsel {
 namespace {
-
-std::vector<std::string> column_names(const Table& table) {
-  std::vector<std::string> names;
-  for (const auto& column : table.columns) names.push_back(column->name);
-  return names;
-}
-
-[[noreturn]] void no_such_column(const std::string& name, const Table& table, const std::string& what) {
-  const auto names = column_names(table);
-  const std::string near = nearest(name, names);
-  std::string hint = near.empty() ? "The columns are: " : "Did you mean \"" + near + "\"?";
-  if (near.empty()) {
-    for (std::size_t i = 0; i < names.size() && i < 20; ++i) hint += (i ? ", " : "") + names[i];
-    hint += ".";
-  }
-  throw Refusal(Code::not_found, "There is no column \"" + name + "\"" + what + ".", {}, hint);
-}
-
-void check_lengths(const Table& table, const Places& places) {
-  if (table.uneven_row != 0) {
-    throw Refusal(Code::length_mismatch,
-                  "Row " + std::to_string(table.uneven_row) + " has " + std::to_string(table.uneven_cells) +
-                      " cells, where the first row has another number.",
-                  {{table.columns.empty() ? "" : table.columns.front()->name, table.uneven_row}},
-                  "Give every row one cell for each column; a blank cell is null.");
-  }
-  if (table.columns.empty()) return;
-  const auto& first = *table.columns.front();
-  for (const auto& column : table.columns) {
-    if (column->size() == first.size()) continue;
-    throw Refusal(Code::length_mismatch,
-                  first.name + " has " + std::to_string(first.size()) + " rows and " + column->name +
-                      " has " + std::to_string(column->size()) + "; they should have as many.",
-                  {{first.name, 0}, {column->name, 0}}, "Select ranges of the same length.");
-  }
-  (void)places;
-}
 
 /// Where a question takes one set of roles or another, one of them must be there.
 void check_either(const Question& question, const Casting& casting) {
@@ -76,37 +38,6 @@ void check_either(const Question& question, const Casting& casting) {
                 {}, "Give them directly, or name the columns in of.roles.");
 }
 
-/// Rows that `of.only` keeps; empty vector and false: all.
-bool keep_only(const Table& table, const Json& rest, std::vector<char>& keep, std::vector<Note>& notes) {
-  const auto only = rest.find("only");
-  if (only == rest.end() || only->is_null()) return false;
-  if (!only->is_object()) {
-    throw Refusal(Code::bad_type, "of.only is an object of columns and the values to keep.", {},
-                  R"(For example {"quarter":["Q1","Q2"]}.)");
-  }
-  keep.assign(table.rows(), 1);
-  for (const auto& [name, wanted] : only->items()) {
-    const Column* column = table.find(name);
-    if (!column) no_such_column(name, table, " for of.only");
-    const Json list = wanted.is_array() ? wanted : Json::array({wanted});
-    std::unordered_set<std::string> values;
-    for (const auto& value : list)
-      values.insert(value.is_null() ? "" : bind::level_of("of.only." + name, value));
-    std::unordered_set<std::string> met;
-    for (std::size_t i = 0; i < keep.size(); ++i) {
-      const std::string text = level_text(*column, i);
-      const bool in = values.count(text) > 0;
-      if (in) met.insert(text);
-      keep[i] = keep[i] && in;
-    }
-    for (const auto& value : values) {
-      if (met.count(value)) continue;
-      notes.push_back({"only_unmatched", "No row of " + name + " is \"" + value + "\".", {{name, 0}}});
-    }
-  }
-  return true;
-}
-
 }  // namespace
 
 Casting cast_roles(const Question& question, const Table& table, const Json& rest) {
@@ -114,8 +45,8 @@ Casting cast_roles(const Question& question, const Table& table, const Json& res
   const auto roles = rest.find("roles");
   const bool given = roles != rest.end() && !roles->is_null();
   if (given && !roles->is_object()) {
-    throw Refusal(Code::bad_type, "of.roles is an object of roles and column names.", {},
-                  R"(For example {"count":"bursts","exposure":"km_years"}.)");
+    throw Refusal(Code::bad_type, "of.roles is " + brief_json(*roles) + "; it should be an object.", {},
+                  R"(Give roles and column names: {"count":"bursts","exposure":"km_years"}.)");
   }
   std::string missing;
   for (const auto& spec : question.roles) {
@@ -124,15 +55,14 @@ Casting cast_roles(const Question& question, const Table& table, const Json& res
       column = table.find(spec.name);
     } else if (const auto named = roles->find(spec.name); named != roles->end() && !named->is_null()) {
       if (!named->is_string()) bind::wrong_type("of.roles." + spec.name, "the name of a column", *named);
-      const auto& name = named->get_ref<const std::string&>();
-      column = table.find(name);
-      if (!column) no_such_column(name, table, " for the role " + spec.name);
+      column = &find_column(table, named->get_ref<const std::string&>(), " for the role " + spec.name);
     }
     if (spec.required && !column) missing += (missing.empty() ? "" : ", ") + spec.name;
     casting.roles.push_back(column);
   }
+  casting.only = read_only(table, rest);
   if (!missing.empty()) {
-    std::string hint =
+    const std::string hint =
         given ? "Name a column for it in of.roles." : "Name the columns in of.roles, or give it directly.";
     throw Refusal(Code::missing, question.name + " needs the role " + missing + ".", {}, hint);
   }
@@ -140,15 +70,13 @@ Casting cast_roles(const Question& question, const Table& table, const Json& res
   return casting;
 }
 
-void take_in(const Question& question, const Table& table, const Casting& casting, const Json& rest,
-             const Places& places, Asked& asked, std::vector<Note>& notes) {
-  check_lengths(table, places);
+void take_in(const Question& question, const Table& table, const Casting& casting, const Places& places,
+             Asked& asked, std::vector<Note>& notes) {
+  check_lengths(table);
   const std::size_t rows = table.rows();
   asked.rows_sent = rows;
 
-  std::vector<char> keep;
-  bool some = keep_only(table, rest, keep, notes);
-  RowsLeftOut left_out(rows, keep, some);
+  RowsLeftOut left_out(rows, rows_to_keep(casting.only, rows, notes));
 
   std::vector<const Column*> all;
   for (const auto& column : table.columns) all.push_back(column.get());
@@ -169,9 +97,7 @@ void take_in(const Question& question, const Table& table, const Casting& castin
   }
   std::vector<ReadColumn> extra_columns;
   for (const auto& [name, holds] : extra) {
-    const Column* column = table.find(name);
-    if (!column) no_such_column(name, table, "");
-    extra_columns.push_back(reader.read(*column, holds));
+    extra_columns.push_back(reader.read(find_column(table, name, ""), holds));
   }
   // A count and its exposure are judged together: nothing observed and nothing seen is no row.
   for (std::size_t i = 0; i < casting.roles.size(); ++i) {
@@ -184,7 +110,7 @@ void take_in(const Question& question, const Table& table, const Casting& castin
     }
     reader.settle_zero_exposures(role_columns[i], count, holds == Holds::exposure);
   }
-  settle_totals(question, role_columns, places, asked.cells.totals, left_out, notes);
+  settle_totals(question, role_columns, places, asked.cells.totals, left_out);
   left_out.tell(notes, places);
 
   if (left_out.kept() == 0 && !question.roles.empty()) {

@@ -4,6 +4,9 @@
 #include <algorithm>
 #include <cctype>
 
+#include "protocol/declare/spec.hpp"
+#include "protocol/wire/brief.hpp"
+
 namespace countsel {
 namespace {
 
@@ -16,6 +19,13 @@ std::string letters(std::int64_t column) {
 }
 
 }  // namespace
+
+std::optional<std::string> origin_of(const Json& rest) {
+  const auto given = rest.find("origin");
+  if (given == rest.end() || given->is_null()) return std::nullopt;
+  if (!given->is_string()) bind::wrong_type("of.origin", "the address of a cell", *given);
+  return given->get<std::string>();
+}
 
 Places::Places(const Table& table, const std::string& origin) : table_(&table) {
   if (origin.empty()) return;
@@ -31,7 +41,8 @@ Places::Places(const Table& table, const std::string& origin) : table_(&table) {
   const bool sheet_ends = at == 0 || origin[at - 1] == '.' || origin[at - 1] == '!';
   if (digits.empty() || digits.size() > 9 || column.empty() || column.size() > 3 || !sheet_ends ||
       std::stoll(digits) == 0) {
-    throw Refusal(Code::bad_value, "of.origin is \"" + origin + "\"; it should be the address of a cell.", {},
+    throw Refusal(Code::bad_value,
+                  "of.origin is \"" + brief(origin) + "\"; it should be the address of a cell.", {},
                   "For example \"Falls.B4\".");
   }
   prefix_ = origin.substr(0, at);
@@ -61,14 +72,15 @@ std::string Places::say(const Place& place) const {
   return "Row " + std::to_string(place.row) + " of " + place.column;
 }
 
-std::string row_list(const std::vector<std::int64_t>& rows, std::size_t most) {
-  std::string text = rows.size() == 1 ? "row " : "rows ";
-  const std::size_t named = std::min(most, rows.size());
+std::string Places::list(const std::vector<Place>& places, std::size_t total, std::size_t most) const {
+  const bool addresses = !places.empty() && cell(places.front());
+  std::string text = addresses ? "" : total == 1 ? "row " : "rows ";
+  const std::size_t named = std::min(most, places.size());
   for (std::size_t i = 0; i < named; ++i) {
-    if (i > 0) text += i + 1 == rows.size() ? " and " : ", ";
-    text += std::to_string(rows[i]);
+    if (i > 0) text += i + 1 == total ? " and " : ", ";
+    text += addresses ? *cell(places[i]) : std::to_string(places[i].row);
   }
-  if (rows.size() > named) text += " and " + std::to_string(rows.size() - named) + " more";
+  if (total > named) text += " and " + std::to_string(total - named) + " more";
   return text;
 }
 

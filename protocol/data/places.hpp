@@ -1,4 +1,6 @@
 // protocol/data/places.hpp -- where a cell is, in the host's own words.
+//
+// Checked by: tests/protocol/data/places_test.cpp.
 #pragma once
 
 #include <optional>
@@ -8,6 +10,9 @@
 #include "protocol/wire/request.hpp"
 
 namespace countsel {
+
+/// `of.origin` as it was given, if it was. Refuses bad_type.
+std::optional<std::string> origin_of(const Json& rest);
 
 /// Turns columns and rows into cell addresses where the asker said where the table lies.
 class Places {
@@ -20,6 +25,9 @@ class Places {
   std::optional<std::string> cell(const Place& place) const;
   /// "Falls.C7 (column count, row 3)" or "Row 3 of count".
   std::string say(const Place& place) const;
+  /// Places of one column for people: "rows 3, 7 and 9", "Falls.C4 and Falls.C9"; at most `most` named.
+  /// `total` is how many there are when `places` holds only the first of them.
+  std::string list(const std::vector<Place>& places, std::size_t total, std::size_t most = 5) const;
 
  private:
   const Table* table_ = nullptr;
@@ -27,8 +35,5 @@ class Places {
   std::int64_t first_column_ = 0, first_row_ = 0;
   bool known_ = false;
 };
-
-/// The end of a list of rows for people: "rows 3, 7 and 9", at most `most` of them named.
-std::string row_list(const std::vector<std::int64_t>& rows, std::size_t most = 5);
 
 }  // namespace countsel

@@ -6,10 +6,11 @@
 #include <unistd.h>
 
 #include <algorithm>
-#include <set>
 
+#include "protocol/data/columns.hpp"
 #include "protocol/data/csv.hpp"
 #include "protocol/declare/nearest.hpp"
+#include "protocol/wire/brief.hpp"
 
 namespace countsel {
 namespace {
@@ -32,25 +33,27 @@ std::string read_file(const fs::path& below, const std::string& name, std::size_
   const auto inside = [&root](const fs::path& path) {
     return std::mismatch(root.begin(), root.end(), path.begin(), path.end()).first == root.end();
   };
-  const std::string outside = "\"" + name + "\" lies outside the folder that this server may read.";
-  if (fs::path(name).is_absolute() || !inside(lexical)) throw Refusal(Code::not_allowed, outside);
+  const std::string outside = "\"" + brief(name) + "\" lies outside the folder that this server may read.";
+  const fs::path plain = fs::path(name).lexically_normal();
+  const bool climbs = !plain.empty() && *plain.begin() == "..";
+  if (plain.is_absolute() || climbs || !inside(lexical)) throw Refusal(Code::not_allowed, outside);
   const fs::path real = fs::weakly_canonical(asked, trouble);
   if (!trouble && !inside(real)) throw Refusal(Code::not_allowed, outside);
   const int descriptor = ::open(real.c_str(), O_RDONLY | O_CLOEXEC | O_NOFOLLOW | O_NONBLOCK);
-  if (descriptor < 0) throw Refusal(Code::not_found, "There is no file \"" + name + "\" to read.");
+  if (descriptor < 0) throw Refusal(Code::not_found, "There is no file \"" + brief(name) + "\" to read.");
   struct Closer {
     int descriptor;
     ~Closer() { ::close(descriptor); }
   } closer{descriptor};
   struct stat facts {};
   if (::fstat(descriptor, &facts) != 0 || !S_ISREG(facts.st_mode)) {
-    throw Refusal(Code::not_allowed, "\"" + name + "\" is not a plain file.");
+    throw Refusal(Code::not_allowed, "\"" + brief(name) + "\" is not a plain file.");
   }
   // A folder on the way may have been exchanged since it was judged; what was opened is judged again.
   const fs::path opened = fs::read_symlink("/proc/self/fd/" + std::to_string(descriptor), trouble);
   if (!trouble && !inside(opened)) throw Refusal(Code::not_allowed, outside);
   if (static_cast<std::size_t>(facts.st_size) > largest) {
-    throw Refusal(Code::too_large, "\"" + name + "\" is larger than this server reads.", {},
+    throw Refusal(Code::too_large, "\"" + brief(name) + "\" is larger than this server reads.", {},
                   "Start it with a larger --max-line.");
   }
   std::string text(static_cast<std::size_t>(facts.st_size), '\0');
@@ -68,7 +71,8 @@ std::string text_of(const Json& rest, const char* key) {
   const auto at = rest.find(key);
   if (at == rest.end() || at->is_null()) return {};
   if (!at->is_string()) {
-    throw Refusal(Code::bad_type, std::string("of.") + key + " is " + at->dump() + "; it should be a text.");
+    throw Refusal(Code::bad_type,
+                  std::string("of.") + key + " is " + brief_json(*at) + "; it should be a text.");
   }
   return at->get<std::string>();
 }
@@ -115,26 +119,24 @@ Table from_range(Of& of, bool header) {
   return table;
 }
 
-void refuse_twins(const Table& table) {
-  std::set<std::string> names;
-  for (const auto& column : table.columns) {
-    if (!names.insert(column->name).second) {
-      throw Refusal(Code::bad_value, "Two columns are named \"" + column->name + "\".", {{column->name, 0}},
-                    "Give each column a name of its own.");
-    }
-  }
-}
-
 }  // namespace
 
-const Column* Table::find(std::string_view name) const {
-  for (const auto& column : columns) {
-    if (column->name == name) return column.get();
+CellRules marks_in(const Json& with) {
+  CellRules rules;
+  if (!with.is_object()) return rules;
+  const auto text = [&with](const char* key) {
+    const auto at = with.find(key);
+    return at != with.end() && at->is_string() ? at->get<std::string>() : std::string();
+  };
+  rules.thousands = text("thousands");
+  if (const std::string decimal = text("decimal"); !decimal.empty()) {
+    rules.decimal = decimal;
+    rules.decimal_given = true;
   }
-  return nullptr;
+  return rules;
 }
 
-std::shared_ptr<const Table> take_table(Of& of, const Shelf& shelf) {
+std::shared_ptr<const Table> take_table(Of& of, const Json& with, const Shelf& shelf) {
   const auto& rest = of.rest;
   bool header = true;
   if (rest.contains("header") && !rest["header"].is_null()) {
@@ -155,12 +157,12 @@ std::shared_ptr<const Table> take_table(Of& of, const Shelf& shelf) {
     auto table = shelf.held ? shelf.held(held) : nullptr;
     if (table) return table;
     const std::string near = shelf.held_names ? nearest(held, shelf.held_names()) : "";
-    throw Refusal(Code::not_found, "No table is held under \"" + held + "\".", {},
+    throw Refusal(Code::not_found, "No table is held under \"" + brief(held) + "\".", {},
                   near.empty() ? "Send it with hold first." : "Did you mean \"" + near + "\"?");
   }
   Table table;
   if (named_file) {
-    table = read_delimited(read_file(shelf.files, file, shelf.largest_file), ',', header);
+    table = read_delimited(read_file(shelf.files, file, shelf.largest_file), ',', header, marks_in(with));
   } else if (of.range) {
     table = from_range(of, header);
   } else {
@@ -168,7 +170,7 @@ std::shared_ptr<const Table> take_table(Of& of, const Shelf& shelf) {
     for (auto& column : columns) table.columns.push_back(std::make_shared<const Column>(std::move(column)));
     table.header = header;
   }
-  refuse_twins(table);
+  check_names(table);
   return std::make_shared<const Table>(std::move(table));
 }
 

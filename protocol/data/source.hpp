@@ -8,6 +8,7 @@
 #include <memory>
 #include <string>
 
+#include "protocol/declare/asked.hpp"
 #include "protocol/wire/request.hpp"
 
 namespace countsel {
@@ -23,6 +24,9 @@ struct Shelf {
 /// The table that `of` names or holds (its data is moved out of the request).
 /// Refuses not_found, not_allowed, bad_type, bad_value (two columns of one name, two forms at once),
 /// missing (no data at all).
-std::shared_ptr<const Table> take_table(Of& of, const Shelf& shelf);
+/// A file is read by the marks that `with` names.
+std::shared_ptr<const Table> take_table(Of& of, const Json& with, const Shelf& shelf);
+/// The marks that options name, before they are checked.
+CellRules marks_in(const Json& with);
 
 }  // namespace countsel

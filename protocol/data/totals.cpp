@@ -15,9 +15,11 @@ bool says_total(std::string text) {
   const auto letter = [](char c) { return std::isalpha(static_cast<unsigned char>(c)) != 0; };
   while (!text.empty() && !letter(text.back())) text.pop_back();
   while (!text.empty() && !letter(text.front())) text.erase(text.begin());
-  static constexpr std::array words = {"total",       "totals",     "all",      "sum",      "overall",
-                                       "grand total", "sub total",  "subtotal", "combined", "all together",
-                                       "together",    "everything", "sums"};
+  static constexpr std::array words = {
+      "total",    "totals",     "all",    "sum",       "sums",      "overall",      "subtotal",
+      "combined", "everything", "totale", "totaal",    "summe",     "all together", "together",
+      "gesamt",   "insgesamt",  "somme",  "ensemble",  "suma",      "razem",        "totalt",
+      "in all",   "altogether", "soma",   "all units", "all areas", "all sites",    "all rows"};
   if (std::find(words.begin(), words.end(), text) != words.end()) return true;
   return text.rfind("total ", 0) == 0 || (text.size() > 6 && text.compare(text.size() - 6, 6, " total") == 0);
 }
@@ -25,7 +27,7 @@ bool says_total(std::string text) {
 }  // namespace
 
 void settle_totals(const Question& question, const std::vector<ReadColumn>& roles, const Places& places,
-                   Totals rule, RowsLeftOut& left_out, std::vector<Note>& notes) {
+                   Totals rule, RowsLeftOut& left_out) {
   if (rule == Totals::keep) return;
   const ReadColumn* count = nullptr;
   const ReadColumn* exposure = nullptr;
@@ -50,7 +52,12 @@ void settle_totals(const Question& question, const std::vector<ReadColumn>& role
     ++rows;
   }
   if (rows < 2) return;
-  const auto is_sum = [&](std::size_t row) { return counts[row] == sum - counts[row]; };
+  // The sheet's total also counts the rows that have been left out here.
+  const double passed_over = left_out.sum_of_left_out(counts);
+  const auto is_sum = [&](std::size_t row) {
+    const double others = sum - counts[row];
+    return counts[row] == others || counts[row] == others + passed_over;
+  };
   const auto exposure_is_sum = [&](std::size_t row) {
     const double own = exposure->values()[row];
     return std::abs(own - (exposure_sum - own)) <= 1e-9 * exposure_sum;
@@ -67,13 +74,15 @@ void settle_totals(const Question& question, const std::vector<ReadColumn>& role
     }
   }
   if (found == counts.size() && sum > 0 && is_sum(last)) {
-    // Without a label, the exposures must add up as well where there are any; a bare list of counts is
-    // taken for a list of counts.
-    const bool unlabelled = std::all_of(labels.begin(), labels.end(), [&](const Column* column) {
-      return column->tag_at(last) == tag::blank;
-    });
-    const bool adds_up = exposure ? exposure_is_sum(last) : !labels.empty();
-    if (unlabelled && adds_up && (rows > 2 || !labels.empty())) found = last;
+    // A label that only the last row lacks gives it away. Where no row has one, the exposures must add up
+    // as well: among rare events a count is soon the sum of the others.
+    const auto bare = [&](std::size_t row) {
+      return std::all_of(labels.begin(), labels.end(),
+                         [&](const Column* column) { return column->tag_at(row) == tag::blank; });
+    };
+    bool others_labelled = false;
+    for (std::size_t i = 0; i < last && !others_labelled; ++i) others_labelled = left_out.in(i) && !bare(i);
+    if (bare(last) && (others_labelled || (exposure && rows > 2 && exposure_is_sum(last)))) found = last;
   }
   if (found == counts.size()) return;
   const Place place{count->column->name, static_cast<std::int64_t>(found) + 1};
@@ -81,7 +90,6 @@ void settle_totals(const Question& question, const std::vector<ReadColumn>& role
     left_out.leave_out(found, "totals_row", count->column->name);
     return;
   }
-  (void)notes;
   throw Refusal(
       Code::totals_row, places.say(place) + " is the sum of the other rows: a totals row among the data.",
       {place},

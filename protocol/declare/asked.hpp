@@ -40,6 +40,7 @@ enum class ErrorCells { refuse, skip };
 enum class Totals { refuse, skip, keep };
 struct CellRules {
   std::string decimal = ".", thousands;
+  bool decimal_given = false;  ///< said, not assumed: then "1.200" and "1,200" are no riddle
   ErrorCells error_cells = ErrorCells::refuse;
   Totals totals = Totals::refuse;
 };
@@ -56,6 +57,7 @@ struct Asked {
   virtual Frame frame() const { return {}; }
 
   CellRules cells;
+  std::optional<double> mask_below;  ///< counts under this are withheld
 
   // Filled by the intake, not by the asker.
   std::size_t rows = 0;             ///< rows used
@@ -82,6 +84,8 @@ struct RateAsked : Asked {
 class Session;
 struct Request;
 struct Table;
+struct Casting;
+class Places;
 
 /// What a question may use besides what it was asked with.
 struct Context {
@@ -90,6 +94,8 @@ struct Context {
   Session* session = nullptr;          ///< for service questions
   const Request* request = nullptr;    ///< likewise
   std::shared_ptr<const Table> table;  ///< likewise
+  const Casting* casting = nullptr;    ///< likewise
+  const Places* places = nullptr;      ///< likewise
 };
 
 }  // namespace countsel

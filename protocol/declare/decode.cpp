@@ -153,6 +153,10 @@ void set_options(const Question& question, const Json& with, Asked& asked) {
     const auto given = with.find(spec.name);
     if (given != with.end() && !given->is_null()) set_option(spec, *given, asked);
   }
+  if (asked.cells.decimal_given && asked.cells.thousands == asked.cells.decimal) {
+    throw Refusal(Code::bad_value,
+                  "decimal and thousands are both \"" + asked.cells.decimal + "\"; they should differ.");
+  }
 }
 
 Words read_words(const Json& words) {

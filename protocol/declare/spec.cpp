@@ -21,6 +21,23 @@ std::string level_of(const std::string& option, const Json& got) {
 
 }  // namespace bind
 
+bool has_count_columns(const std::vector<TableSpec>& tables) {
+  for (const auto& table : tables)
+    for (const auto& column : table.columns)
+      if (column.style == Style::count) return true;
+  return false;
+}
+
+OptionSpec mask_option() {
+  auto spec =
+      bind::number("mask_below", &Asked::mask_below,
+                   "withhold counts under this, and what would give them away; the data's owner decides")
+          .from(3)
+          .to(1e9);
+  spec.type = "whole";
+  return spec;
+}
+
 std::vector<OptionSpec> cell_options() {
   std::vector<OptionSpec> options;
   const auto choice = [&](std::string name, std::string doc, std::vector<std::string> words, auto set,
@@ -33,7 +50,10 @@ std::vector<OptionSpec> cell_options() {
   };
   choice(
       "decimal", "the decimal mark of numbers that come as text", {".", ","},
-      [](CellRules& rules, const std::string& word) { rules.decimal = word; },
+      [](CellRules& rules, const std::string& word) {
+        rules.decimal = word;
+        rules.decimal_given = true;
+      },
       [](const CellRules& rules) { return rules.decimal; });
   choice(
       "thousands", "the thousands mark of numbers that come as text", {"", ",", ".", " ", "'"},

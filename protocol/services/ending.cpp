@@ -1,5 +1,6 @@
 // protocol/services/ending.cpp -- ending a request, ending the program.
 #include "protocol/services/service.hpp"
+#include "protocol/wire/brief.hpp"
 
 namespace countsel {
 namespace {
@@ -8,15 +9,19 @@ struct Nothing : Asked {};
 
 Answer stop(const Nothing&, Context& context) {
   const std::string& id = context.request->of.id;
+  if (context.request->of.rest.contains("id") && id.empty()) {
+    bind::wrong_type("of.id", "the id of a request, text or a whole number", context.request->of.rest["id"]);
+  }
   if (id.empty()) {
     throw Refusal(Code::missing, "cancel needs of.id, the id of the request to end.", {},
                   R"(For example "of":{"id":7}.)");
   }
-  if (!context.session->cancel(id)) {
-    throw Refusal(Code::not_found, "No request with the id " + id + " is pending.", {},
+  // The cancel itself is pending as well; it cannot be meant.
+  if (id == context.request->id_plain || !context.session->cancel(id)) {
+    throw Refusal(Code::not_found, "No request with the id " + brief(id) + " is pending.", {},
                   "It may have been answered already.");
   }
-  return {.say = "The request with the id " + id + " is cancelled."};
+  return {.say = "The request with the id " + brief(id) + " is cancelled."};
 }
 
 Answer leave(const Nothing&, Context& context) {

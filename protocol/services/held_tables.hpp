@@ -6,8 +6,6 @@
 
 namespace countsel {
 
-/// Refuses length_mismatch: what is held should be a table.
-void check_table(const Table& table);
 /// One row per column: name, kind, rows, distinct values, blanks.
 OutTable columns_table(const Table& table);
 

@@ -3,6 +3,8 @@
 #include <limits>
 #include <unordered_set>
 
+#include "protocol/data/columns.hpp"
+#include "protocol/data/places.hpp"
 #include "protocol/declare/nearest.hpp"
 #include "protocol/services/held_tables.hpp"
 #include "protocol/services/service.hpp"
@@ -32,6 +34,13 @@ double distinct_numbers(const std::vector<double>& numbers) {
   return static_cast<double>(seen.size());
 }
 
+double distinct_booleans(const Column& column) {
+  const auto has = [&](auto tag) {
+    return std::find(column.tags.begin(), column.tags.end(), tag) != column.tags.end();
+  };
+  return (has(tag::yes) ? 1 : 0) + (has(tag::no) ? 1 : 0);
+}
+
 void require_name(const Named& asked, const char* question) {
   if (asked.name.empty()) {
     throw Refusal(Code::missing, std::string(question) + " needs with.name, the name of the table.", {},
@@ -45,10 +54,9 @@ Answer keep(const Named& asked, Context& context) {
     throw Refusal(Code::missing, "hold needs a table.", {}, "Give of.columns, of.range or of.file.");
   }
   auto table = std::make_shared<Table>(*context.table);
-  const auto& rest = context.request->of.rest;
-  if (rest.contains("origin") && rest["origin"].is_string())
-    table->origin = rest["origin"].get<std::string>();
-  check_table(*table);
+  if (const auto origin = origin_of(context.request->of.rest)) table->origin = *origin;
+  (void)Places(*table, table->origin);  // refuses what is no address now rather than later
+  check_lengths(*table);
   Answer answer{.say = asked.name + " is held: " + std::to_string(table->rows()) +
                        (table->rows() == 1 ? " row" : " rows") + ", " +
                        std::to_string(table->columns.size()) +
@@ -97,22 +105,6 @@ const std::vector<TableSpec> columns_spec = {{"columns",
 
 }  // namespace
 
-void check_table(const Table& table) {
-  if (table.uneven_row != 0) {
-    throw Refusal(Code::length_mismatch,
-                  "Row " + std::to_string(table.uneven_row) + " has " + std::to_string(table.uneven_cells) +
-                      " cells, where the first row has " + std::to_string(table.columns.size()) + ".",
-                  {}, "Give every row one cell for each column; a blank cell is null.");
-  }
-  for (const auto& column : table.columns) {
-    if (column->size() == table.rows()) continue;
-    throw Refusal(Code::length_mismatch,
-                  table.columns[0]->name + " has " + std::to_string(table.rows()) + " rows and " +
-                      column->name + " has " + std::to_string(column->size()) + "; they should have as many.",
-                  {{table.columns[0]->name, 0}, {column->name, 0}});
-  }
-}
-
 OutTable columns_table(const Table& table) {
   std::vector<std::string> names, kinds;
   std::vector<double> rows, levels, blanks;
@@ -120,7 +112,8 @@ OutTable columns_table(const Table& table) {
     names.push_back(column->name);
     kinds.push_back(kind_of(*column));
     rows.push_back(static_cast<double>(column->size()));
-    levels.push_back(distinct_numbers(column->numbers) + static_cast<double>(column->texts.size()));
+    levels.push_back(distinct_numbers(column->numbers) + static_cast<double>(column->texts.size()) +
+                     distinct_booleans(*column));
     blanks.push_back(static_cast<double>(std::count(column->tags.begin(), column->tags.end(), tag::blank)));
   }
   return {"columns",

@@ -21,7 +21,7 @@ std::string one_unit(const std::vector<std::string>& said, const char* what) {
   std::string unit;
   for (const auto& word : said) {
     if (word.empty()) continue;
-    if (unit.empty() || (singular(unit) == word)) {
+    if (unit.empty() || singular(word) == unit) {
       unit = word;
     } else if (singular(word) != singular(unit)) {
       throw Refusal(Code::bad_value,
@@ -127,10 +127,15 @@ const Question& read_quick(Request& request) {
   Json words = Json::object();
   if (!events.empty()) words["events"] = events;
   if (!unit.empty()) words["exposure"] = unit;
+  // What the asker says outright goes before what the line says in passing.
+  if (request.words.is_object()) {
+    for (const auto& [key, value] : request.words.items()) words[key] = value;
+  }
   if (!words.empty()) read["words"] = words;
 
   Request inner = read_request(read.dump());
   inner.id = request.id;
+  inner.id_plain = request.id_plain;
   inner.want = request.want;
   inner.progress = request.progress;
   inner.within_s = request.within_s;

@@ -10,6 +10,8 @@
 #include "protocol/data/intake.hpp"
 #include "protocol/declare/decode.hpp"
 #include "protocol/declare/nearest.hpp"
+#include "protocol/masking/mask.hpp"
+#include "protocol/session/quiet_look.hpp"
 #include "protocol/wire/brief.hpp"
 #include "protocol/wire/reply.hpp"
 #include "protocol/wording/cautions.hpp"
@@ -19,7 +21,7 @@ namespace {
 
 /// Digest of question, options (with their defaults) and the cells of the columns used.
 std::uint64_t digest_of(const Question& question, const Json& with, const Asked& defaults,
-                        const Casting& casting, const Asked& asked, const Json& rest) {
+                        const Casting& casting, const Asked& asked, const Json& rest, bool with_counts) {
   XXH3_state_t state;
   XXH3_64bits_reset(&state);
   const auto text = [&state](const std::string& part) {
@@ -33,7 +35,8 @@ std::uint64_t digest_of(const Question& question, const Json& with, const Asked&
     text(with.is_object() && given != with.end() ? given->dump() : option.get(defaults).dump());
   }
   for (std::size_t i = 0; i < casting.roles.size(); ++i) {
-    if (!casting.roles[i]) continue;
+    // A digest of withheld counts would let them be found by trying.
+    if (!casting.roles[i] || (!with_counts && question.roles[i].holds == Holds::count)) continue;
     text(question.roles[i].name);
     number(casting.roles[i]->digest);
   }
@@ -90,26 +93,24 @@ Reply answer_request(Request& request, const Question& question, std::shared_ptr
     const Json& rest = request.of.rest;
     context.request = &request;
     context.table = table;
+    static const Table empty;
+    const Table& data = table ? *table : empty;
     Casting casting;
-    if (!question.roles.empty()) {
-      static const Table empty;
-      casting = cast_roles(question, table ? *table : empty, rest);
-    }
+    if (!question.roles.empty()) casting = cast_roles(question, data, rest);
     const auto defaults = question.make(), asked = question.make();
     asked->words = read_words(request.words);
     const auto wanted = read_want(request.want);
     set_options(question, request.with, *asked);
     if (!question.roles.empty()) {
-      std::string origin = table->origin;
-      if (rest.contains("origin") && rest["origin"].is_string()) origin = rest["origin"].get<std::string>();
-      if (rest.contains("origin") && !rest["origin"].is_null() && !rest["origin"].is_string()) {
-        bind::wrong_type("of.origin", "the address of a cell", rest["origin"]);
-      }
-      places = Places(*table, origin);
-      take_in(question, *table, casting, rest, places, *asked, context.notes);
+      places = Places(data, origin_of(rest).value_or(data.origin));
+      context.casting = &casting;
+      context.places = &places;
+      if (!question.as_sent) take_in(question, data, casting, places, *asked, context.notes);
+      if (!question.service) look_quietly(question, *asked, places, context.notes);
     }
     context.work.progress.check();
     Answer answer = question.answer(*asked, context);
+    const bool masked = mask_counts(question, *asked, context, answer);
     std::vector<Note> notes = std::move(context.notes);
     for (auto& note : answer.notes) notes.push_back(std::move(note));
     answer.notes = std::move(notes);
@@ -117,7 +118,7 @@ Reply answer_request(Request& request, const Question& question, std::shared_ptr
     if (!request.read_as.is_null()) answer.more = request.read_as;
     const Wording wording(asked->words, asked->frame());
     const auto digest =
-        question.service ? 0 : digest_of(question, request.with, *defaults, casting, *asked, rest);
+        question.service ? 0 : digest_of(question, request.with, *defaults, casting, *asked, rest, !masked);
     return {"answer", answer_text(question, answer, wording, places, wanted, digest)};
   } catch (...) {
     return {"refused", refusal_text(current_trouble(), places)};

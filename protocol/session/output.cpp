@@ -1,6 +1,7 @@
 // protocol/session/output.cpp -- whole lines to one descriptor.
 #include "protocol/session/output.hpp"
 
+#include <poll.h>
 #include <unistd.h>
 
 #include <cerrno>
@@ -26,6 +27,9 @@ void Output::send(std::string& line) {
     const auto wrote = ::write(descriptor_, line.data() + sent, line.size() - sent);
     if (wrote >= 0) {
       sent += static_cast<std::size_t>(wrote);
+    } else if (errno == EAGAIN) {
+      pollfd full{descriptor_, POLLOUT, 0};
+      ::poll(&full, 1, -1);
     } else if (errno != EINTR) {
       // Nobody listens any more: end quietly. Anything else (a full disk) is said and is a failure.
       if (errno == EPIPE) std::_Exit(0);

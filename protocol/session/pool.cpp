@@ -4,6 +4,7 @@
 #include <atomic>
 #include <exception>
 #include <memory>
+#include <system_error>
 
 namespace countsel {
 namespace {
@@ -49,18 +50,24 @@ Pool::~Pool() {
   for (auto& thread : threads_) thread.join();
 }
 
-void Pool::start() {
+bool Pool::start() {
   // Threads are made when first needed: a start that answers one small question makes none.
-  while (threads_.size() < size_) threads_.emplace_back([this] { serve(); });
+  try {
+    while (threads_.size() < size_) threads_.emplace_back([this] { serve(); });
+  } catch (const std::system_error&) {
+    // Fewer hands than wished for.
+  }
+  return !threads_.empty();
 }
 
-void Pool::post(std::function<void()> job) {
+bool Pool::post(std::function<void()> job) {
   {
     const std::lock_guard lock(mutex_);
-    start();
+    if (!start()) return false;
     jobs_.push_back(std::move(job));
   }
   wake_.notify_one();
+  return true;
 }
 
 void Pool::serve() {

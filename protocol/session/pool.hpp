@@ -21,13 +21,14 @@ class Pool {
   Pool(const Pool&) = delete;
   Pool& operator=(const Pool&) = delete;
 
-  void post(std::function<void()> job);
+  /// False if there is no thread to do it: the machine would give none.
+  bool post(std::function<void()> job);
   std::size_t size() const { return size_; }
   /// Hands for one computation: the caller's own and whichever threads are idle at the time.
   Workers workers();
 
  private:
-  void start();
+  bool start();
   void serve();
   void share(std::size_t tasks, const std::function<void(std::size_t)>& piece);
 

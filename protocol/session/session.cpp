@@ -21,17 +21,16 @@ constexpr auto between_progress = std::chrono::milliseconds(100);
 }  // namespace
 
 struct Session::Job {
-  enum State { queued, running, done };
-
   Request request;
-  std::string id, ask;
+  std::string id, id_plain, ask;
   const Question* question = nullptr;
   std::shared_ptr<const Table> table;
+  bool reads_file = false;
   std::uint64_t place = 0;
   Clock::time_point read_at = Clock::now();
   std::optional<Clock::time_point> deadline;
   std::atomic<bool> cancelled{false};
-  std::atomic<int> state{queued};
+  bool started = false;  // guarded by the session's mutex
   std::mutex telling;
   Clock::time_point told_at;
 };
@@ -41,8 +40,15 @@ Session::Session(const ServerOptions& options, int output)
       output_(output),
       pool_(options.workers ? options.workers : std::max(1U, std::thread::hardware_concurrency())) {}
 
-Shelf Session::shelf() const {
+Shelf Session::file_shelf() const {
   Shelf shelf;
+  shelf.files = options_.files;
+  shelf.largest_file = options_.longest_line;
+  return shelf;
+}
+
+Shelf Session::shelf() const {
+  Shelf shelf = file_shelf();
   shelf.held = [this](const std::string& name) {
     const auto at = held_.find(name);
     return at == held_.end() ? nullptr : at->second;
@@ -52,8 +58,6 @@ Shelf Session::shelf() const {
     for (const auto& [name, table] : held_) names.push_back(name);
     return names;
   };
-  shelf.files = options_.files;
-  shelf.largest_file = options_.longest_line;
   return shelf;
 }
 
@@ -84,22 +88,24 @@ Work Session::work_for(const std::shared_ptr<Job>& job) {
   return work;
 }
 
-void Session::finish(Job& job, const Reply& reply) {
-  if (options_.log) {
-    const auto took = std::chrono::duration<double, std::milli>(Clock::now() - job.read_at).count();
-    std::fprintf(stderr, "countsel: %s %s: %s in %.3f ms\n", job.id.empty() ? "-" : job.id.c_str(),
-                 job.ask.empty() ? "?" : job.ask.c_str(), reply.refused() ? "refused" : "answered", took);
-  }
+void Session::finish(Job& job, Reply reply) {
   {
     // An id is free again as soon as its reply is on its way, or the answer could be overtaken by a refusal.
+    // From here on a cancel comes too late; what came before decides.
     const std::lock_guard lock(mutex_);
-    const auto [first, last] = pending_.equal_range(job.id);
+    const auto [first, last] = pending_.equal_range(job.id_plain);
     for (auto at = first; at != last; ++at) {
       if (at->second.get() == &job) {
         pending_.erase(at);
         break;
       }
     }
+    if (job.cancelled) reply = refuse(Refusal(Code::cancelled, "The request was cancelled."));
+  }
+  if (options_.log) {
+    const auto took = std::chrono::duration<double, std::milli>(Clock::now() - job.read_at).count();
+    std::fprintf(stderr, "countsel: %s %s: %s in %.3f ms\n", job.id.empty() ? "-" : job.id.c_str(),
+                 job.ask.empty() ? "?" : job.ask.c_str(), reply.refused() ? "refused" : "answered", took);
   }
   output_.reply(job.place, reply_line(job.id, job.ask, reply.part, reply.body));
   if (unfinished_.fetch_sub(1) == 1) {
@@ -108,30 +114,39 @@ void Session::finish(Job& job, const Reply& reply) {
   }
 }
 
-void Session::run(const std::shared_ptr<Job>& job) {
-  int expected = Job::queued;
-  if (!job->state.compare_exchange_strong(expected, Job::running)) return;  // cancelled while it waited
+Reply Session::reply_to(const std::shared_ptr<Job>& job) {
+  try {
+    if (job->reads_file) job->table = take_table(job->request.of, job->request.with, file_shelf());
+  } catch (...) {
+    return refuse(current_trouble());
+  }
   Context context;
   context.work = work_for(job);
   context.session = this;
-  const Reply reply = answer_request(job->request, *job->question, std::move(job->table), std::move(context));
-  job->state = Job::done;
-  finish(*job, reply);
+  return answer_request(job->request, *job->question, std::move(job->table), std::move(context));
+}
+
+void Session::run(const std::shared_ptr<Job>& job) {
+  {
+    const std::lock_guard lock(mutex_);
+    if (job->cancelled) return;  // while it waited; its reply has been given
+    job->started = true;
+  }
+  finish(*job, reply_to(job));
 }
 
 bool Session::cancel(const std::string& id) {
   std::shared_ptr<Job> job;
+  bool waiting = false;
   {
     const std::lock_guard lock(mutex_);
     const auto at = pending_.find(id);
     if (id.empty() || at == pending_.end()) return false;
     job = at->second;
+    waiting = !job->started && !job->cancelled;
+    job->cancelled = true;
   }
-  job->cancelled = true;
-  int expected = Job::queued;
-  if (job->state.compare_exchange_strong(expected, Job::done)) {
-    finish(*job, refuse(Refusal(Code::cancelled, "The request was cancelled.")));
-  }
+  if (waiting) finish(*job, {});
   return true;
 }
 
@@ -139,6 +154,7 @@ void Session::handle(Request request) {
   auto job = std::make_shared<Job>();
   job->place = output_.reserve();
   job->id = request.id;
+  job->id_plain = request.id_plain;
   job->ask = request.ask;
   if (request.within_s) {
     const double seconds = std::min(*request.within_s, 1e8);
@@ -149,8 +165,8 @@ void Session::handle(Request request) {
   bool pending_twice = false;
   {
     const std::lock_guard lock(mutex_);
-    pending_twice = !job->id.empty() && pending_.count(job->id) > 0;
-    if (!pending_twice) pending_.emplace(job->id, job);
+    pending_twice = !job->id_plain.empty() && pending_.count(job->id_plain) > 0;
+    if (!pending_twice) pending_.emplace(job->id_plain, job);
   }
   try {
     job->question = &question_of(request);
@@ -158,22 +174,20 @@ void Session::handle(Request request) {
       throw Refusal(Code::bad_value, "A request with the id " + job->id + " is still pending.", {},
                     "Give each pending request an id of its own.");
     }
-    if (job->question->name == "quick") {
-      job->question = &read_quick(request);
-      job->table = take_table(request.of, shelf());
-    } else if (!job->question->roles.empty() || job->question->takes_columns) {
-      job->table = take_table(request.of, shelf());
+    if (job->question->name == "quick") job->question = &read_quick(request);
+    if (!job->question->roles.empty() || job->question->takes_columns) {
+      // A held table is looked up now: later lines may release it. A file can be read by a worker.
+      const auto& file = request.of.rest.find("file");
+      job->reads_file = !job->question->service && file != request.of.rest.end() && !file->is_null();
+      if (!job->reads_file) job->table = take_table(request.of, request.with, shelf());
     }
   } catch (...) {
     return finish(*job, refuse(current_trouble()));
   }
   job->request = std::move(request);
-  const bool small = job->question->light && (!job->table || job->table->rows() <= small_rows);
-  if (job->question->service || (idle && small)) {
-    run(job);
-  } else {
-    pool_.post([this, job] { run(job); });
-  }
+  const bool small =
+      job->question->light && !job->reads_file && (!job->table || job->table->rows() <= small_rows);
+  if (job->question->service || (idle && small) || !pool_.post([this, job] { run(job); })) run(job);
 }
 
 void Session::serve(int input) {
@@ -188,7 +202,8 @@ Reply Session::answer_now(Request& request) {
     const Question* question = &question_of(request);
     std::shared_ptr<const Table> table;
     if (question->name == "quick") question = &read_quick(request);
-    if (!question->roles.empty() || question->takes_columns) table = take_table(request.of, shelf());
+    if (!question->roles.empty() || question->takes_columns)
+      table = take_table(request.of, request.with, shelf());
     Context context;
     context.work.workers = pool_.workers();
     context.session = this;

@@ -44,6 +44,7 @@ class Session {
   void hold(const std::string& name, std::shared_ptr<const Table> table) { held_[name] = std::move(table); }
   bool release(const std::string& name) { return held_.erase(name) > 0; }
   const std::map<std::string, std::shared_ptr<const Table>>& held() const { return held_; }
+  /// False if no request of that id (as `id_plain`) is pending.
   bool cancel(const std::string& id);
   void end() { ending_ = true; }
 
@@ -51,9 +52,11 @@ class Session {
   struct Job;
   void handle(Request request);
   void run(const std::shared_ptr<Job>& job);
-  void finish(Job& job, const Reply& reply);
+  Reply reply_to(const std::shared_ptr<Job>& job);
+  void finish(Job& job, Reply reply);
   Work work_for(const std::shared_ptr<Job>& job);
-  Shelf shelf() const;
+  Shelf shelf() const;       ///< held tables and files; for the reader's thread
+  Shelf file_shelf() const;  ///< files only
 
   ServerOptions options_;
   Output output_;
