@@ -1,12 +1,15 @@
 // protocol/cli/arguments.cpp -- texts to JSON, a table from a file or a pipe.
 #include "protocol/cli/arguments.hpp"
 
+#include <filesystem>
 #include <fstream>
 #include <iostream>
 #include <iterator>
 
 #include "protocol/catalogue.hpp"
+#include "protocol/data/columns.hpp"
 #include "protocol/data/csv.hpp"
+#include "protocol/data/source.hpp"
 
 namespace countsel {
 namespace {
@@ -33,40 +36,42 @@ Json pairs(const std::string& text, const std::string& what) {
 std::string read_all(const std::string& path) {
   if (path == "-") return {std::istreambuf_iterator<char>(std::cin), {}};
   std::ifstream file(path, std::ios::binary);
-  if (!file) throw Misuse("cannot read the table " + path + ".");
+  if (!file || std::filesystem::is_directory(path)) throw Misuse("cannot read the table " + path + ".");
   std::string text{std::istreambuf_iterator<char>(file), {}};
   if (file.bad()) throw Misuse("cannot read the table " + path + ".");
   return text;
 }
 
-/// Cells pasted from a sheet come tab-separated.
+/// Cells pasted from a sheet come tab-separated; where the comma is the decimal mark, CSV has semicolons.
 char delimiter_of(const std::string& text) {
   const auto line = text.substr(0, text.find('\n'));
-  return line.find('\t') != std::string::npos ? '\t' : ',';
+  for (const char delimiter : {'\t', ',', ';'}) {
+    if (line.find(delimiter) != std::string::npos) return delimiter;
+  }
+  return ',';
 }
 
 }  // namespace
 
 Json option_value(const std::string& type, const std::string& text) {
-  if (type != "text") {
-    Json value = Json::parse(text, nullptr, false);
-    if (!value.is_discarded())
-      return type.rfind("list", 0) == 0 && !value.is_array() ? Json::array({value}) : value;
+  if (type == "text" || type == "choice") return text;
+  const bool list = type.rfind("list", 0) == 0;
+  Json value = Json::parse(text, nullptr, false);
+  if (!value.is_discarded()) return list && !value.is_array() ? Json::array({value}) : value;
+  // "0.8,1.25" is a list without its brackets.
+  value = Json::parse("[" + text + "]", nullptr, false);
+  if (!value.is_discarded() && (list || value.size() > 1)) return value;
+  if (!list) return text;
+  Json words = Json::array();
+  for (std::size_t from = 0; from <= text.size() && !text.empty();) {
+    const auto comma = std::min(text.find(',', from), text.size());
+    words.push_back(text.substr(from, comma - from));
+    from = comma + 1;
   }
-  if (type.rfind("list", 0) == 0) {
-    Json list = Json::array();
-    for (std::size_t from = 0; from <= text.size() && !text.empty();) {
-      const auto comma = std::min(text.find(',', from), text.size());
-      list.push_back(text.substr(from, comma - from));
-      from = comma + 1;
-    }
-    return list;
-  }
-  return text;
+  return words;
 }
 
 Request request_of(const AskArguments& asked) {
-  Json request = {{"ask", asked.question}};
   Json of = Json::object(), with = Json::object();
   const Question* question = find_question(asked.question);
   std::string table;
@@ -91,32 +96,20 @@ Request request_of(const AskArguments& asked) {
     const auto [column, value] = split(only, "column=value");
     of["only"][column].push_back(value);
   }
-  request["of"] = of;
-  request["with"] = with;
-  if (!asked.words.empty()) request["words"] = pairs(asked.words, "word=text");
-  Request read;
-  {
-    // The columns go straight into the request; only the small parts are written and read as JSON.
-    read = Request{};
-    read.ask = asked.question;
-    read.of.given = true;
-    read.of.rest = of;
-    read.with = with;
-    read.words = request.contains("words") ? request["words"] : Json();
-  }
-  if (table.empty()) return read;
+  // The columns go straight into the request, never through a text.
+  Request request;
+  request.ask = asked.question;
+  request.of.given = true;
+  request.of.rest = std::move(of);
+  request.with = std::move(with);
+  if (!asked.words.empty()) request.words = pairs(asked.words, "word=text");
+  if (table.empty()) return request;
   const std::string text = read_all(table);
-  Table columns = read_delimited(text, delimiter_of(text), !asked.no_header);
-  if (columns.uneven_row != 0) {
-    throw Refusal(Code::length_mismatch,
-                  "Row " + std::to_string(columns.uneven_row) + " of the table has " +
-                      std::to_string(columns.uneven_cells) +
-                      " cells, where the first row has another number.",
-                  {}, "Give every row one cell for each column; quote cells that hold commas.");
-  }
-  read.of.columns.emplace();
-  for (const auto& column : columns.columns) read.of.columns->push_back(*column);
-  return read;
+  const Table read = read_delimited(text, delimiter_of(text), !asked.no_header, marks_in(request.with));
+  check_lengths(read);
+  request.of.columns.emplace();
+  for (const auto& column : read.columns) request.of.columns->push_back(*column);
+  return request;
 }
 
 }  // namespace countsel

@@ -22,8 +22,8 @@ struct Misuse : std::runtime_error {
   using std::runtime_error::runtime_error;
 };
 
-/// Reads the table (CSV, or tab-separated where the first line has a tab and no comma decides otherwise) and
-/// builds the request. Throws Misuse, or Refusal for the table.
+/// Reads the table (tab-separated, CSV, or CSV with semicolons: by the first of these that its first line
+/// holds) and builds the request. Throws Misuse, or Refusal for the table.
 Request request_of(const AskArguments& asked);
 
 /// An option's text as the wire would have it: JSON where it is JSON, a list where one is wanted, else text.

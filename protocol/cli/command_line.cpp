@@ -4,12 +4,12 @@
 #include <unistd.h>
 
 #include <CLI/CLI.hpp>
-#include <fstream>
 #include <iostream>
-#include <iterator>
+#include <sstream>
 
 #include "protocol/catalogue.hpp"
 #include "protocol/cli/arguments.hpp"
+#include "protocol/cli/deliver.hpp"
 #include "protocol/cli/help.hpp"
 #include "protocol/cli/print.hpp"
 #include "protocol/session/session.hpp"
@@ -23,17 +23,17 @@ constexpr int answered = 0, refused = 1, misuse = 2;
 
 /// Asks on this thread and prints; the reply is read back from the wire's text, so that people and programs
 /// are told the same.
-int ask_and_print(Session& session, Request request, bool as_json) {
+int ask_and_print(Session& session, Request request, bool as_json, std::ostream& out) {
   const std::string id = request.id, ask = request.ask;
   if (!as_json)
     request.want = Json(std::vector<std::string>{"say", "figures", "tables", "heads", "shown", "notes"});
   const Reply reply = session.answer_now(request);
   if (as_json) {
-    std::cout << reply_line(id, ask, reply.part, reply.body) << "\n";
+    out << reply_line(id, ask, reply.part, reply.body) << "\n";
   } else if (reply.refused()) {
     print_refusal(std::cerr, Json::parse(reply.body));
   } else {
-    print_answer(std::cout, Json::parse(reply.body));
+    print_answer(out, Json::parse(reply.body));
   }
   return reply.refused() ? refused : answered;
 }
@@ -51,6 +51,7 @@ int run_command_line(int argc, char** argv) {
   app.add_option("--files", options.files, "folder below which requests may name CSV files")
       ->type_name("FOLDER");
   app.add_option("--max-line", options.longest_line, "bytes that a line may have (default 268435456)")
+      ->check(CLI::PositiveNumber)
       ->type_name("BYTES");
   app.add_option("--workers", options.workers,
                  "requests worked on at once (default: as many as the machine has)")
@@ -86,28 +87,34 @@ int run_command_line(int argc, char** argv) {
   questions->add_flag("--json", questions_json, "print the wire's reply");
   app.require_subcommand(0, 1);
 
+  std::ostringstream out;
   try {
     app.parse(argc, argv);
   } catch (const CLI::ParseError& error) {
-    return app.exit(error) == 0 ? answered : misuse;
+    const int status = app.exit(error, out, std::cerr) == 0 ? answered : misuse;
+    return deliver(out.str(), status);
   }
 
   Session session(options, STDOUT_FILENO);
   try {
     if (ask->parsed()) {
-      return ask_and_print(session, request_of(asked), asked.json);
+      const int status = ask_and_print(session, request_of(asked), asked.json, out);
+      return deliver(out.str(), status);
     }
     if (quick->parsed()) {
       const Json request = {{"ask", "quick"}, {"of", {{"line", line}}}};
-      return ask_and_print(session, read_request(request.dump()), quick_json);
+      const int status = ask_and_print(session, read_request(request.dump()), quick_json, out);
+      return deliver(out.str(), status);
+    }
+    if (questions->parsed() && questions_json) {
+      Json request = {{"ask", "questions"}};
+      if (!name.empty()) request["with"] = {{"name", name}};
+      const int status = ask_and_print(session, read_request(request.dump()), true, out);
+      return deliver(out.str(), status);
     }
     if (questions->parsed()) {
-      if (questions_json) {
-        Json request = {{"ask", "questions"}};
-        if (!name.empty()) request["with"] = {{"name", name}};
-        return ask_and_print(session, read_request(request.dump()), true);
-      }
-      return print_questions(std::cout, std::cerr, name) ? answered : misuse;
+      const int status = print_questions(out, std::cerr, name) ? answered : refused;
+      return deliver(out.str(), status);
     }
   } catch (const Misuse& trouble) {
     std::cerr << "countsel: " << trouble.what() << "\n";
