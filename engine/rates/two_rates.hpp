@@ -52,12 +52,12 @@ double difference_test(const TwoRates& data, RatioMethod method, Direction direc
 /// the pooled rate (score) or with each group's own (unpooled).
 enum class ETestStatistic { score, unpooled };
 
-/// The E-test: the chance, with both rates at their estimate under the null, of a standardised
-/// difference at least as far out (Krishnamoorthy and Thomson 2004, J. Stat. Plan. Inference 119). Countsel
-/// takes `unpooled`, the statistic of their own published values; with equal exposures both are the same. A
-/// null ratio scales exposure 1. Summed over both counts while their sum is at most 2e7 (under 30 ms); beyond that the
-/// conditional mid-p value stands in for it, which then differs by less than 1e-5 of itself where it is above
-/// 1e-80. Both counts 0: 1. Refuses as ratio_test.
+/// The E-test: the chance, with both rates at their estimate under the null, of a standardised difference at
+/// least as far out (Krishnamoorthy and Thomson 2004, J. Stat. Plan. Inference 119). Countsel takes
+/// `unpooled`, the statistic of their own published values; with equal exposures both are the same. A null
+/// ratio scales exposure 1. Summed over both counts while their sum is at most 2e7 (under 30 ms); beyond that
+/// mid-p's tails given the sum stand in, which then differ by less than 1e-5 of themselves where they are
+/// above 1e-80. Both counts 0: 1. Refuses as ratio_test.
 double e_test(const TwoRates& data, ETestStatistic statistic, Direction direction, double null_ratio = 1);
 
 /// P(rate 1 > rate 0 | data), each with Jeffreys' prior: a beta tail.

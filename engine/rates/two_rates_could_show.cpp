@@ -43,6 +43,11 @@ struct Question {
   bool own_e_test() const { return method == TestMethod::e_test && mean1 + mean0 <= e_test_summed; }
   // How far, in logarithms, the p-value of counts i and j is below the level: 0 or more is a rejection.
   double margin(double i, double j) const {
+    if (method == TestMethod::e_test && either) {
+      const double excess = above_expected(i, j, share);
+      const bool right_side = larger() ? excess > 0 : excess < 0;
+      return std::log(2 * level / (right_side ? e_test_given_sum(i, j, share, ETestStatistic::unpooled) : 1));
+    }
     return std::log(level /
                     (larger() ? p_above(method, i, j, share) : p_above(method, j, i, share.turned())));
   }

@@ -79,13 +79,29 @@ double chance_above(const Statistic& statistic, double least, double n, double c
 
 }  // namespace
 
+// With the sum n fixed and excess = i - n p, the score statistic is excess over a constant, so the other
+// side's point is -excess. The unpooled variance is n p q + excess (q - p): the statistic's square takes a
+// value at two points whose product is minus that square times n p q.
+double e_test_given_sum(double i, double j, const Share& share, ETestStatistic kind) {
+  const double p = share.chance(), q = share.other(), n = i + j;
+  const double excess = above_expected(i, j, share);
+  if (excess < 0) return e_test_given_sum(j, i, share.turned(), kind);
+  const double even = n * p * q;
+  const double other = kind == ETestStatistic::score ? excess : excess * even / (even + excess * (q - p));
+  const double far_i = n * p - other, far_j = n * q + other;
+  const double far = far_i < 0 ? 0 : p_above(TestMethod::mid_p, far_j, far_i, share.turned());
+  return std::min(1.0, p_above(TestMethod::mid_p, i, j, share) + far);
+}
+
 double e_test(const TwoRates& data, ETestStatistic kind, Direction direction, double null_ratio) {
   require_two_rates(data);
   require_positive(null_ratio, "null ratio");
   const double x1 = data.count1, x0 = data.count0, n = x1 + x0;
   if (n == 0) return 1;
-  if (n > most_summed) return ratio_test(data, TestMethod::mid_p, direction, null_ratio);
   const Share share = share_under(data, null_ratio);
+  if (n > most_summed)
+    return direction == Direction::either ? e_test_given_sum(x1, x0, share, kind)
+                                          : ratio_test(data, TestMethod::mid_p, direction, null_ratio);
   const Statistic above{kind, share.chance(), share.other()}, below{kind, above.q, above.p};
   const double seen = above(x1, x0);
   // A pair left out is 1e-25 as likely as the p-value is large, by the size of the conditional one.

@@ -67,6 +67,11 @@ double likelihood_deviate(double i, double j, const Share& share) {
   return std::copysign(std::sqrt(2 * half), excess);
 }
 
+double chance_of_split(double i, double j, const Share& share) {
+  if (i == 0 || j == 0) return binomial_exactly(i, i + j, share);
+  return beta_front(i, j, share) * (1 / i + 1 / j);
+}
+
 // P(X >= i) of i + j trials is a beta tail with shapes i and j + 1, for real i and j as well.
 double p_above(TestMethod method, double i, double j, const Share& share) {
   if (i + j == 0) return 1;
@@ -82,7 +87,7 @@ double p_above(TestMethod method, double i, double j, const Share& share) {
       break;
   }
   const double beyond = j == 0 ? 0 : beta_tails(i + 1, j, share).below;
-  return beyond + binomial_exactly(i, i + j, share) / 2;
+  return beyond + chance_of_split(i, j, share) / 2;
 }
 
 }  // namespace countsel

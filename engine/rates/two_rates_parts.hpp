@@ -42,6 +42,14 @@ Limits on_side(Side side, double low, double high, double floor);
 /// as i grows. `e_test` is answered by mid-p, its neighbour at large counts.
 double p_above(TestMethod method, double i, double j, const Share& share);
 
+/// The chance that of i + j events i are group 1's; also where the sum of i and j is not a double.
+double chance_of_split(double i, double j, const Share& share);
+
+/// The E-test's two-sided value given the sum of i and j, real: mid-p's tail at what was seen and at the
+/// point whose statistic lies as far out on the other side. Differs from the full sum by the order of 1 / (i
+/// + j).
+double e_test_given_sum(double i, double j, const Share& share, ETestStatistic kind);
+
 /// The score and the signed root of the likelihood ratio for counts i and j at the share of the null.
 double score_deviate(double i, double j, const Share& share);
 double likelihood_deviate(double i, double j, const Share& share);

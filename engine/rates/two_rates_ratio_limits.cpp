@@ -41,7 +41,7 @@ double mid_p_low(double x1, double x0, double tail) {
     const Share share = share_of_odds(1, odds, 1);
     const double here = p_above(TestMethod::mid_p, x1, x0, share);
     if (!(here > 0)) return ValueSlope{-infinity, 1};
-    const double slope = binomial_exactly(x1, n, share) * (x0 * share.chance() + x1 * share.other()) / 2;
+    const double slope = chance_of_split(x1, x0, share) * (x0 * share.chance() + x1 * share.other()) / 2;
     return ValueSlope{std::log(here / tail), slope / here};
   };
   const double guess = score_low(x1, x0, normal_upper_quantile(tail));

@@ -92,7 +92,8 @@ TEST_CASE("tails, densities and quantiles to 12 digits: shapes to 1e9, tails to 
       CHECK(value == wanted);
     }
   }
-  for (const auto& [name, function] : all) {
+  for (const auto& entry : all) {
+    const auto& name = entry.first;
     CAPTURE(name);
     CHECK(seen[name] > 8);
   }

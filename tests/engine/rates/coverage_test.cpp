@@ -70,7 +70,10 @@ TEST_CASE("exact limits never fall short, at any mean, level or side") {
 
 TEST_CASE("mid-p limits are close to the confidence") {
   const Coverage mid_p(RateMethod::mid_p, 0.95), exact(RateMethod::exact, 0.95);
-  for (const auto& [from, to, least] : {std::array{1., 5., 0.91}, {5., 20., 0.92}, {20., 200., 0.939}}) {
+  for (const auto& entry : {std::array{1., 5., 0.91}, {5., 20., 0.92}, {20., 200., 0.939}}) {
+    const auto& from = entry[0];
+    const auto& to = entry[1];
+    const auto& least = entry[2];
     CAPTURE(from);
     const auto [lowest, average] = mid_p.between(from, to);
     CHECK(lowest > least);

@@ -26,13 +26,16 @@ const std::map<std::string, RateMethod> methods = {{"exact", RateMethod::exact},
                                                    {"bayes", RateMethod::bayes}};
 
 TEST_CASE("every method agrees with 30-digit arithmetic to 12 digits, counts 0 to 1e9") {
-  for (const auto& [name, method] : methods)
+  for (const auto& entry : methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     for (const auto& row : reference_rows("limits.tsv", name + "\t")) {
       LimitsSpec spec{.method = method, .confidence = row.in("confidence"), .prior = {2.5, 40}};
       const Limits limits = rate_limits(row.in("count"), method == RateMethod::bayes ? 60 : 1, spec);
       row.check("low", limits.low);
       row.check("high", limits.high);
     }
+  }
   for (const auto& row : reference_rows("limits.tsv", "event\t")) {
     const LimitsSpec spec{.confidence = row.in("confidence"), .stopped_by = StoppedBy::event};
     const Limits limits = rate_limits(row.in("count"), 1, spec);
@@ -42,7 +45,9 @@ TEST_CASE("every method agrees with 30-digit arithmetic to 12 digits, counts 0 t
 }
 
 TEST_CASE("published limits for one rate") {
-  for (const auto& [name, method] : methods) {
+  for (const auto& entry : methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     if (method == RateMethod::bayes || method == RateMethod::jeffreys || method == RateMethod::log_wald ||
         method == RateMethod::square_root || method == RateMethod::likelihood)
       continue;  // no published value at hand
@@ -66,7 +71,9 @@ TEST_CASE("published limits for one rate") {
 }
 
 TEST_CASE("one-sided limits spend all of the chance on their side") {
-  for (const auto& [name, method] : methods)
+  for (const auto& entry : methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     for (const double count : {0., 1., 4., 90., 3000., 1e9}) {
       CAPTURE(name);
       CAPTURE(count);
@@ -87,11 +94,14 @@ TEST_CASE("one-sided limits spend all of the chance on their side") {
       CHECK(lower.low == doctest::Approx(both.low).epsilon(1e-11));
       CHECK(upper.high == doctest::Approx(both.high).epsilon(1e-11));
     }
+  }
 }
 
 TEST_CASE("limits at count 0") {
   const auto at_zero = [](RateMethod method) { return rate_limits(0, 1, {.method = method}); };
-  for (const auto& [name, method] : methods) {
+  for (const auto& entry : methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     if (method == RateMethod::log_wald || method == RateMethod::bayes) continue;
     CAPTURE(name);
     CHECK(at_zero(method).low == 0);
@@ -110,7 +120,9 @@ TEST_CASE("limits at count 0") {
 }
 
 TEST_CASE("limits scale with the exposure, rise with the count and contain the estimate") {
-  for (const auto& [name, method] : methods) {
+  for (const auto& entry : methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     CAPTURE(name);
     Limits last{-1, 0};
     for (const double count : {0., 1., 2., 3., 10., 99., 100., 498., 499., 500., 501., 1e5, 1e9, 9e15}) {

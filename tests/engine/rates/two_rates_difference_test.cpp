@@ -19,7 +19,9 @@ TwoRates pair_of(const ReferenceRow& row) {
 }
 
 TEST_CASE("difference limits and tests agree with 30-digit arithmetic") {
-  for (const auto& [name, method] : methods) {
+  for (const auto& entry : methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     for (const auto& row : reference_rows("two_rates.tsv", "difference_limits " + name + "\t")) {
       const Limits limits = difference_limits(pair_of(row), method, row.in("confidence"), Side::both);
       row.check("low", limits.low);
@@ -45,7 +47,9 @@ TEST_CASE("difference limits agree with their tests, turn with the groups and sc
   for (const double x1 : {0., 1., 2., 5., 17., 130., 6000.})
     for (const double x0 : {0., 1., 3., 9., 88., 700.})
       for (const double e0 : {31., 0.02})
-        for (const auto& [name, method] : methods) {
+        for (const auto& entry : methods) {
+          const auto& name = entry.first;
+          const auto& method = entry.second;
           CAPTURE(name);
           CAPTURE(x1);
           CAPTURE(x0);

@@ -40,16 +40,21 @@ const std::vector<TwoRates> grid = [] {
 }();
 
 TEST_CASE("ratio limits agree with 30-digit arithmetic to 12 digits") {
-  for (const auto& [name, method] : limit_methods)
+  for (const auto& entry : limit_methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     for (const auto& row : reference_rows("two_rates.tsv", "ratio_limits " + name + "\t")) {
       const Limits limits = ratio_limits(pair_of(row), method, row.in("confidence"), Side::both);
       row.check("low", limits.low);
       row.check("high", limits.high);
     }
+  }
 }
 
 TEST_CASE("ratio tests agree with 30-digit arithmetic to 12 digits, tails to 1e-300") {
-  for (const auto& [name, method] : test_methods)
+  for (const auto& entry : test_methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     for (const auto& row : reference_rows("two_rates.tsv", "ratio_test " + name + "\t")) {
       const auto p = [&](Direction direction) {
         return ratio_test(pair_of(row), method, direction, row.in("null_ratio"));
@@ -58,6 +63,7 @@ TEST_CASE("ratio tests agree with 30-digit arithmetic to 12 digits, tails to 1e-
       row.check("below", p(Direction::below));
       row.check("either", p(Direction::either));
     }
+  }
   for (const auto& row : reference_rows("two_rates.tsv", "posterior_higher\t"))
     row.check("chance", posterior_higher(pair_of(row)));
 }
@@ -72,8 +78,10 @@ TEST_CASE("published ratio limits and tests") {
       row.check("high", limits.high);
     }
   for (const std::string name : {"exact", "mid_p", "score"})
-    for (const auto& [word, direction] :
+    for (const auto& entry :
          {std::pair{" above ", Direction::above}, std::pair{" below ", Direction::below}}) {
+      const auto& word = entry.first;
+      const auto& direction = entry.second;
       if (name == "score" && direction == Direction::below) continue;  // none published
       for (const auto& row : reference_rows("published_two_rates.tsv", name + word))
         row.check("p",
@@ -85,7 +93,9 @@ TEST_CASE("published ratio limits and tests") {
 
 TEST_CASE("changing the groups' places turns ratio limits over") {
   for (const TwoRates& d : grid)
-    for (const auto& [name, method] : limit_methods) {
+    for (const auto& entry : limit_methods) {
+      const auto& name = entry.first;
+      const auto& method = entry.second;
       CAPTURE(name);
       const Limits limits = ratio_limits(d, method, 0.9, Side::both);
       const Limits turned =
@@ -101,7 +111,8 @@ TEST_CASE("changing the groups' places turns ratio limits over") {
 
 TEST_CASE("ratio limits and tests do not heed the unit of exposure") {
   for (const TwoRates& d : grid)
-    for (const auto& [name, method] : limit_methods) {
+    for (const auto& entry : limit_methods) {
+      const auto& method = entry.second;
       const TwoRates scaled{d.count1, d.exposure1 * 1024, d.count0, d.exposure0 * 1024};
       const Limits a = ratio_limits(d, method, 0.95, Side::both),
                    b = ratio_limits(scaled, method, 0.95, Side::both);
@@ -115,7 +126,9 @@ TEST_CASE("ratio limits and tests do not heed the unit of exposure") {
 
 TEST_CASE("a ratio limit is the ratio whose one-sided test gives the tail") {
   for (const TwoRates& d : grid)
-    for (const auto& [name, test] : test_methods) {
+    for (const auto& entry : test_methods) {
+      const auto& name = entry.first;
+      const auto& test = entry.second;
       CAPTURE(name);
       CAPTURE(d.count1);
       CAPTURE(d.count0);
@@ -131,7 +144,9 @@ TEST_CASE("a ratio limit is the ratio whose one-sided test gives the tail") {
 }
 
 TEST_CASE("zero counts give one-sided limits") {
-  for (const auto& [name, method] : limit_methods) {
+  for (const auto& entry : limit_methods) {
+    const auto& name = entry.first;
+    const auto& method = entry.second;
     if (method == RatioMethod::log_wald) continue;
     CAPTURE(name);
     const Limits none1 = ratio_limits({0, 10, 4, 10}, method, 0.95, Side::both);
@@ -144,16 +159,19 @@ TEST_CASE("zero counts give one-sided limits") {
     CHECK(none.low == 0);
     CHECK(none.high == infinity);
   }
-  for (const auto& [name, test] : test_methods)
+  for (const auto& entry : test_methods) {
+    const auto& test = entry.second;
     for (const Direction direction : {Direction::either, Direction::above, Direction::below})
       CHECK(ratio_test({0, 3, 0, 5}, test, direction) == 1);
+  }
   CHECK(ratio_test({0, 3, 0, 5}, TestMethod::e_test, Direction::either) == 1);
   CHECK(std::isnan(ratio_limits({0, 10, 4, 10}, RatioMethod::log_wald, 0.95, Side::both).low));
 }
 
 TEST_CASE("one-sided ratio limits leave the other end open") {
   const TwoRates d{14, 2300, 5, 2100};
-  for (const auto& [name, method] : limit_methods) {
+  for (const auto& entry : limit_methods) {
+    const auto& method = entry.second;
     const Limits both = ratio_limits(d, method, 0.9, Side::both);
     const Limits lower = ratio_limits(d, method, 0.95, Side::lower),
                  upper = ratio_limits(d, method, 0.95, Side::upper);
