@@ -52,13 +52,6 @@ RatioMethod ratio_method(RateMethod method) {
   }
 }
 
-bool share_one_ratio(std::span<const PresentAndPast> rows) {
-  const double first = rows[0].exposure / rows[0].past_exposure;
-  return std::all_of(rows.begin(), rows.end(), [first](const PresentAndPast& row) {
-    return std::abs(row.exposure / row.past_exposure - first) <= 1e-12 * first;
-  });
-}
-
 }  // namespace
 
 double expected_test(double count, double expected, TestMethod test, Direction direction) {
@@ -97,9 +90,16 @@ ExpectedRatio count_over_past(const PresentAndPast& row, const ExpectedSpec& spe
   return {row.count, expected, ratio, limits.low, limits.high, ratio_test(two, spec.test, spec.direction)};
 }
 
+bool pasts_share_one_ratio(std::span<const PresentAndPast> rows) {
+  const double first = rows[0].exposure / rows[0].past_exposure;
+  return std::all_of(rows.begin(), rows.end(), [first](const PresentAndPast& row) {
+    return std::abs(row.exposure / row.past_exposure - first) <= 1e-12 * first;
+  });
+}
+
 ExpectedRatio counts_over_pasts(std::span<const PresentAndPast> rows, const ExpectedSpec& spec) {
   if (rows.empty()) throw Refusal(Code::too_few, "There are no rows to compare with their past.");
-  if (share_one_ratio(rows)) {
+  if (pasts_share_one_ratio(rows)) {
     Sum count, exposure, past_count, past_exposure;
     for (const auto& row : rows) {
       count.add(row.count);

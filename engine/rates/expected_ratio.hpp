@@ -48,6 +48,9 @@ struct PresentAndPast {
 /// score, likelihood or log_wald; refuses bad_value for another, and as ratio_limits does.
 ExpectedRatio count_over_past(const PresentAndPast& row, const ExpectedSpec& spec);
 
+/// Is exposure / past exposure the same in all rows, to rounding?
+bool pasts_share_one_ratio(std::span<const PresentAndPast> rows);
+
 /// Several rows together: the sum of counts over the sum of expected numbers. Where exposure / past exposure
 /// is the same in all rows this is count_over_past of the sums; where it is not, the expected sum is a
 /// weighted sum of Poisson counts, matched by its first two moments as engine/rates/weighted_count.hpp

@@ -86,8 +86,10 @@ std::string say_extremes(const Wording& wording, const std::vector<std::string>&
 }
 
 Note no_exposure_note(std::size_t rows) {
-  return {"no_exposure", "No exposure was given; each of the " + std::to_string(rows) +
-                             (rows == 1 ? " rows" : " rows") + " counts as 1 unit."};
+  return {"no_exposure",
+          "No exposure was given; " +
+              (rows == 1 ? std::string("the row") : "each of the " + std::to_string(rows) + " rows") +
+              " counts as 1 unit."};
 }
 
 Note scaled_note(const Dispersion& spread, double phi) {
@@ -115,10 +117,13 @@ void note_dispersion(const Dispersion& spread, bool groups, const Wording& wordi
 
 void note_small_count(double count, const Wording& wording, std::vector<Note>& notes) {
   if (count >= 10) return;
-  notes.push_back({"small_count", "Only " + wording.counted(count) +
-                                      ": one more or less would change the rate by " +
-                                      (count > 0 ? significant_text(100 / count, 2) + "%." : "all of it.") +
-                                      " Read the limits rather than the rate."});
+  const std::string how = count > 0 ? "Only " + wording.counted(count) +
+                                          ": one more or less would change the rate by " +
+                                          significant_text(100 / count, 2) + "%."
+                                    : "There were " + wording.counted(0) +
+                                          " at all: a rate of 0 is what was "
+                                          "seen, not what is possible.";
+  notes.push_back({"small_count", how + " Read the limits rather than the rate."});
 }
 
 void note_large_sum(double count, std::vector<Note>& notes) {
