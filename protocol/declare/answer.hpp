@@ -27,7 +27,9 @@ struct Source {
 };
 
 using OptionalText = std::optional<std::string>;
-using Cells = std::variant<std::vector<double>, std::vector<std::string>, std::vector<OptionalText>>;
+/// Figures only where a column mixes numbers and marks, such as "<5".
+using Cells = std::variant<std::vector<double>, std::vector<std::string>, std::vector<OptionalText>,
+                           std::vector<Figure>>;
 
 struct OutTable {
   std::string name;

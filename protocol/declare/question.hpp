@@ -22,9 +22,10 @@ struct Question {
   std::vector<Source> sources;
   std::string headline;
   std::vector<std::string> examples;
-  bool service = false;                          ///< about the server, not about rates
-  bool light = false;                            ///< within about a millisecond at two thousand rows
-  bool takes_columns = false;                    ///< columns without a role are used too
+  bool service = false;        ///< about the server, not about rates
+  bool light = false;          ///< within about a millisecond at two thousand rows
+  bool as_sent = false;        ///< reads the table itself: no cell is judged, no row left out
+  bool takes_columns = false;  ///< columns without a role are used too
   std::vector<std::vector<std::string>> either;  ///< sets of roles of which one must be given whole
   std::vector<std::string> of_keys;              ///< small keys of `of` that a service reads
   std::function<std::unique_ptr<Asked>()> make;
@@ -54,6 +55,9 @@ struct Declaration {
 
 /// The options about cells that every question with data has.
 std::vector<OptionSpec> cell_options();
+/// Of every question that shows counts: withhold the small ones.
+OptionSpec mask_option();
+bool has_count_columns(const std::vector<TableSpec>& tables);
 
 template <class A>
 Question question(Declaration<A> declared) {
@@ -63,6 +67,7 @@ Question question(Declaration<A> declared) {
   made.roles = std::move(declared.roles);
   made.options = std::move(declared.options);
   for (auto& option : cell_options()) made.options.push_back(std::move(option));
+  if (has_count_columns(declared.tables)) made.options.push_back(mask_option());
   made.figures = std::move(declared.figures);
   made.tables = std::move(declared.tables);
   made.sources = std::move(declared.sources);

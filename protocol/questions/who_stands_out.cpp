@@ -201,18 +201,17 @@ Answer answer(const WhoStandsOut& asked, Context& context) {
 
   const double benchmark = result.model.benchmark * base.scale;
   const bool ratio = asked.expected.given;
-  const SaidUnits said{
-      .labels = labels,
-      .funnel = result,
-      .p_adjusted = p_adjusted,
-      .inner = asked.inner,
-      .outer = asked.outer,
-      .level = 1 - asked.confidence,
-      .benchmark = ratio ? "a ratio of " + significant_text(benchmark, 3) + " to what was expected"
-                         : significant_text(benchmark, 3) + " " + wording.rate_unit() + wording.period(),
-      .adjustment = asked.adjust == Adjust::none   ? ""
-                    : asked.adjust == Adjust::holm ? "Holm"
-                                                   : "Benjamini and Hochberg"};
+  const SaidUnits said{.labels = labels,
+                       .funnel = result,
+                       .p_adjusted = p_adjusted,
+                       .inner = asked.inner,
+                       .outer = asked.outer,
+                       .level = 1 - asked.confidence,
+                       .benchmark = ratio ? "a ratio of " + said_benchmark + " to what was expected"
+                                          : said_benchmark + " " + wording.rate_unit() + wording.period(),
+                       .adjustment = asked.adjust == Adjust::none   ? ""
+                                     : asked.adjust == Adjust::holm ? "Holm"
+                                                                    : "Benjamini and Hochberg"};
   Answer answer{.say = say_units(said)};
   answer.figures = {{"benchmark", benchmark},
                     {"dispersion", result.spread.dispersion},

@@ -14,20 +14,6 @@ namespace {
 constexpr std::size_t most_places = 20;
 constexpr std::size_t most_points = 2000;
 
-void write_cells(JsonWriter& out, const Cells& cells) {
-  if (const auto* numbers = std::get_if<std::vector<double>>(&cells)) {
-    out.numbers(*numbers);
-  } else if (const auto* texts = std::get_if<std::vector<std::string>>(&cells)) {
-    out.texts(*texts);
-  } else {
-    out.open('[');
-    for (const auto& text : std::get<std::vector<OptionalText>>(cells)) {
-      text ? out.text(*text) : out.raw("null");
-    }
-    out.close(']');
-  }
-}
-
 void write_figure(JsonWriter& out, const Figure& figure) {
   if (const auto* number = std::get_if<double>(&figure)) {
     out.number(*number);
@@ -35,6 +21,24 @@ void write_figure(JsonWriter& out, const Figure& figure) {
     out.text(*text);
   } else {
     out.boolean(std::get<bool>(figure));
+  }
+}
+
+void write_cells(JsonWriter& out, const Cells& cells) {
+  if (const auto* numbers = std::get_if<std::vector<double>>(&cells)) {
+    out.numbers(*numbers);
+  } else if (const auto* texts = std::get_if<std::vector<std::string>>(&cells)) {
+    out.texts(*texts);
+  } else if (const auto* mixed = std::get_if<std::vector<Figure>>(&cells)) {
+    out.open('[');
+    for (const auto& figure : *mixed) write_figure(out, figure);
+    out.close(']');
+  } else {
+    out.open('[');
+    for (const auto& text : std::get<std::vector<OptionalText>>(cells)) {
+      text ? out.text(*text) : out.raw("null");
+    }
+    out.close(']');
   }
 }
 

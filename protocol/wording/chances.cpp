@@ -26,12 +26,14 @@ std::string range_text(const AskedRange& range) {
 
 std::string say_chance(const Wording& wording, const SaidChance& said) {
   const bool past = !std::isnan(said.past_count);
-  const std::string mean = significant_text(said.mean, 3);
+  const std::string mean = past ? significant_text(said.mean, 3) : given_text(said.mean);
+  std::string next = past ? wording.observed(said.next_exposure) : "";
+  if (next.rfind("1 ", 0) == 0) next.erase(0, 2);  // "in the next year"
   const std::string are = said.mean == 1 ? " " + wording.event() + " is" : " " + wording.events() + " are";
   std::string text;
   if (past) {
     text = "After " + wording.counted(said.past_count) + " in " + wording.observed(said.past_exposure) +
-           ", " + mean + are + " to be expected in the next " + wording.observed(said.next_exposure);
+           ", " + mean + are + " to be expected in the next " + next;
   } else {
     text = "With " + mean + (said.mean == 1 ? " " + wording.event() : " " + wording.events()) + " expected";
   }
@@ -44,7 +46,7 @@ std::string say_chance(const Wording& wording, const SaidChance& said) {
     text += past ? "; the count will likely be " : ", the count will likely be ";
   }
   text += said.low == said.high ? given_text(said.low)
-                                : "from " + given_text(said.low) + " to " + given_text(said.high);
+                                : "between " + given_text(said.low) + " and " + given_text(said.high);
   text += " (" + wording.level() + " range, ";
   if (past) {
     text += "with the doubt that the past leaves";

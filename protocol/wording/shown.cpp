@@ -78,6 +78,15 @@ std::vector<std::pair<std::string, std::vector<std::string>>> shown_columns(cons
       texts = *given;
     } else if (const auto* optional = std::get_if<std::vector<OptionalText>>(&cells)) {
       for (const auto& text : *optional) texts.push_back(text.value_or(""));
+    } else if (const auto* mixed = std::get_if<std::vector<Figure>>(&cells)) {
+      const ColumnSpec* column = find_column(spec, name);
+      for (const auto& figure : *mixed) {
+        const auto* number = std::get_if<double>(&figure);
+        const auto* text = std::get_if<std::string>(&figure);
+        texts.push_back(number ? shown_number(*number, column ? column->style : Style::number)
+                        : text ? *text
+                               : "");
+      }
     } else {
       const auto& numbers = std::get<std::vector<double>>(cells);
       const ColumnSpec* column = find_column(spec, name);

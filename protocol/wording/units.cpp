@@ -56,8 +56,8 @@ std::string say_units(const SaidUnits& said) {
            : funnel.beyond_inner == 0 ? " lies"
                                       : " lie") +
           " outside the " + percent_text(said.inner) + " limits round " + said.benchmark;
-  if (widened) text += ", widened for the spread between units,";
-  text += " (" + by_chance(n, said.inner) + " would by chance alone)";
+  text += " (" + std::string(widened ? "widened for the spread between units; " : "") +
+          by_chance(n, said.inner) + " would by chance alone)";
   if (funnel.beyond_inner > 0) {
     text += " and " + outside(funnel.beyond_outer) + " outside the " + percent_text(said.outer) + " ones";
   }
@@ -74,8 +74,9 @@ std::string say_units(const SaidUnits& said) {
       said.adjustment.empty() ? " Taken one by one, " : " Allowing for so many comparisons, ";
   const std::string how =
       said.adjustment.empty()
-          ? " (p below " + significant_text(said.level, 2) + ", unadjusted)."
-          : " (p below " + significant_text(said.level, 2) + " after " + said.adjustment + ").";
+          ? " (p below " + given_text(std::round(said.level * 1e8) / 1e8) + ", unadjusted)."
+          : " (p below " + given_text(std::round(said.level * 1e8) / 1e8) + " after " + said.adjustment +
+                ").";
   if (flagged.empty()) return text + allowing + "none stands out" + how;
   return text + allowing + listed(names, 5) + (flagged.size() == 1 ? " stands out" : " stand out") + how;
 }
