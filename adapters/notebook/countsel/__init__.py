@@ -14,7 +14,7 @@ countsel.questions() lists what can be asked; help(countsel.how_often) tells abo
 from . import shared
 from .answer import Answer
 from .engine import Engine
-from .handle import Held
+from .handle import Held, Range
 from .refused import Refused, UnknownArgument
 from .trouble import EngineDied, EngineMissing, EngineTrouble
 from .version import __version__
@@ -26,6 +26,7 @@ __all__ = [
     "EngineMissing",
     "EngineTrouble",
     "Held",
+    "Range",
     "Refused",
     "UnknownArgument",
 ]

@@ -6,6 +6,7 @@ import json
 import keyword
 
 from .answer import Answer
+from .handle import Range
 from .nearest import nearest
 from .refused import UnknownArgument
 
@@ -18,7 +19,7 @@ COMMON = {
     "progress": "True to see how far it is, or a function called with (share, doing)",
     "only": 'rows to keep: {"quarter": ["Q1", "Q2"]}',
 }
-TAKEN = "a DataFrame, a dict of columns, a held table, the name of a CSV file below `files`, or nothing"
+TAKEN = "a DataFrame, a dict of columns, a list of rows, a held table, a CSV file's name below `files`, or nothing"
 
 
 def function_of(entry, ask):
@@ -86,6 +87,8 @@ def arguments_of(request, entry):
     data = None
     if "columns" in of:
         data = of["columns"]
+    elif "range" in of:
+        data = Range(of["range"], of.get("header", True), of.get("origin"))
     elif of:
         own = set(names_of(entry, "roles"))
         data, roles = (None, of) if set(of) <= own else (of, roles)
@@ -99,6 +102,8 @@ def doc_of(entry):
         lines += ["", f"{DATA}: {TAKEN}."]
         if entry["takes_columns"]:
             lines.append("Columns without a role are used too.")
+        if either := entry.get("either"):
+            lines.append(f"Needed: {' or '.join(' and '.join(roles) for roles in either)}.")
     sections = {
         "Roles, each a column's name or the values themselves": [
             (role["name"], ("required; " if role["required"] else "") + f"{role['doc']} ({role['holds']})")

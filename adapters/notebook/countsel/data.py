@@ -7,20 +7,24 @@ import sys
 from collections.abc import Mapping
 
 from .column import cell, column, is_scalar
-from .handle import Held
+from .handle import Held, Range
 from .refused import Refused
 
 
 def of_data(data, roles, entry, only=None):
     """(`of`, rows or None where only the engine knows them).
 
-    data    a DataFrame, a dict of columns, a Held, a file's name, or None
+    data    a DataFrame, a dict of columns, a Range or a list of rows, a Held, a file's name, or None
     roles   {role: a column's name, or its values}
     entry   the question, from the catalogue
     only    {column: values to keep} or None
     """
+    if is_rows(data):
+        data = Range(data)
     if data is None:
         of, rows = _direct(roles)
+    elif isinstance(data, Range):
+        of, rows = {**of_range(data), **_named(roles, "a range")}, max(0, len(data.rows) - data.header)
     elif isinstance(data, Held):
         of, rows = {"held": data.name, **_named(roles, "a held table")}, data.rows
     elif isinstance(data, (str, os.PathLike)):
@@ -33,7 +37,11 @@ def of_data(data, roles, entry, only=None):
 
 
 def all_columns(data):
-    """Every column of a frame, for `hold`: ({"columns": ...}, rows)."""
+    """A whole table, for `hold`: ({"columns": ...} or another form, rows)."""
+    if is_rows(data):
+        data = Range(data)
+    if isinstance(data, Range):
+        return of_range(data), max(0, len(data.rows) - data.header)
     if isinstance(data, (str, os.PathLike)):
         return {"file": os.fspath(data)}, None
     if data is None or isinstance(data, Held):
@@ -42,6 +50,24 @@ def all_columns(data):
         )
     sent = [(name, *column(values, name)) for name, _, values in frame(data)]
     return {"columns": {name: cells for name, cells, _ in sent}}, sent[0][2] if sent else 0
+
+
+def is_rows(data):
+    """Whether these are rows of cells, as pasted from a sheet."""
+    return (
+        isinstance(data, (list, tuple)) and len(data) > 0 and all(isinstance(row, (list, tuple)) for row in data)
+    )
+
+
+def of_range(data):
+    """A Range as the wire takes it."""
+    rows = [[cell(value, f"row {number}") for value in row] for number, row in enumerate(data.rows, 1)]
+    of = {"range": rows}
+    if not data.header:
+        of["header"] = False
+    if data.origin is not None:
+        of["origin"] = data.origin
+    return of
 
 
 def frame(data):
@@ -57,7 +83,7 @@ def frame(data):
         raise Refused(
             "bad_type",
             f"The data are a {type(data).__name__}.",
-            hint="Give a DataFrame, a dict of columns, a held table, or the name of a file.",
+            hint="Give a DataFrame, a dict of columns, a list of rows, a held table, or the name of a file.",
         )
     seen = set()
     for name, _, _ in table:

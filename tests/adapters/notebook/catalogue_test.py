@@ -5,7 +5,7 @@ import unittest
 from support import FAKE
 
 from countsel import Answer, Engine, Refused, UnknownArgument
-from countsel.catalogue import arguments_of, call_text, option_doc, request_of
+from countsel.catalogue import arguments_of, call_text, doc_of, option_doc, request_of
 
 
 class Functions(unittest.TestCase):
@@ -136,6 +136,22 @@ class Examples(unittest.TestCase):
         ]
         for request, wanted in cases:
             self.assertEqual(arguments_of(request, self.entry), wanted)
+
+    def test_a_range_keeps_its_origin(self):
+        request = {"of": {"range": [["a"], [1]], "origin": "B4"}}
+        self.assertEqual(call_text(request, self.entry), "q(countsel.Range([['a'], [1]], origin='B4'))")
+
+    def test_roles_of_which_one_set_is_needed(self):
+        entry = {
+            "name": "q",
+            "asks": "Q?",
+            "takes_columns": False,
+            "service": False,
+            "either": [["a"], ["b", "c"]],
+        }
+        entry |= {part: [] for part in ("options", "figures", "tables", "methods", "examples")}
+        entry["roles"] = [{"name": "a", "required": False, "holds": "number", "doc": "the a"}]
+        self.assertIn("Needed: a or b and c.", doc_of(entry))
 
     def test_the_call_as_one_would_type_it(self):
         request = {"of": {"count": [1], "soil": ["a"]}, "with": {"per": 9}}

@@ -7,7 +7,7 @@ import numpy as np
 import pandas as pd
 import support  # noqa: F401  finds the package
 
-from countsel import Held, Refused
+from countsel import Held, Range, Refused
 from countsel.data import all_columns, frame, of_data, plain
 
 ENTRY = {"takes_columns": False, "roles": [{"name": "count"}, {"name": "exposure"}, {"name": "group"}]}
@@ -63,6 +63,18 @@ class Forms(unittest.TestCase):
         self.assertEqual(of(pathlib.Path("a.csv"), count="n"), ({"file": "a.csv", "roles": {"count": "n"}}, None))
         with self.assertRaisesRegex(Refused, "name of a column"):
             of(table, count=[1, 2])
+
+    def test_rows_as_in_a_sheet(self):
+        rows = [["month", "falls"], ["Jan", np.int64(3)], ("Feb", math.nan)]
+        sent = {"range": [["month", "falls"], ["Jan", 3], ["Feb", None]], "roles": {"count": "falls"}}
+        self.assertEqual(of(rows, count="falls"), (sent, 2))
+        placed = Range(rows[1:], header=False, origin="Falls.B4")
+        wanted = {"range": sent["range"][1:], "header": False, "origin": "Falls.B4"}
+        self.assertEqual(of(placed), (wanted, 2))
+        self.assertEqual(all_columns(placed), (wanted, 2))
+        self.assertEqual(repr(Range([[1]], False, "B4")), "countsel.Range([[1]], header=False, origin='B4')")
+        with self.assertRaisesRegex(Refused, "row 2"):
+            of([["a"], [object()]])
 
     def test_a_name_that_is_not_there_is_left_to_the_engine_with_the_names_that_are(self):
         sent, _ = of(TABLE, count="m", exposure="km")
