@@ -1,6 +1,6 @@
 """Copies the Poisson cases with log link out of the shared regression cases, with their sources.
 
-  python3 copy_cases.py /work/shared/cases/models     (writes poisson_cases.json and hard_cases.json here)
+  python3 copy_cases.py CASES_FOLDER     (writes poisson_cases.json and hard_cases.json here)
 
 `recomputed` there was made with mpmath at 60 digits by generate/make_reference.py and is printed to 20.
 """
