@@ -13,8 +13,8 @@ constexpr double rounding_share = 16 * 2.3e-16;
 void add_to(Combination& combination, const Combination& more, double multiple) {
   for (const auto& [k, share] : more) {
     const DoubleDouble change = share * DoubleDouble(multiple);
-    const auto at =
-        std::find_if(combination.begin(), combination.end(), [&](const auto& c) { return c.first == k; });
+    auto at = combination.begin();
+    while (at != combination.end() && at->first != k) ++at;
     if (at == combination.end())
       combination.emplace_back(k, change);
     else
@@ -104,6 +104,11 @@ void drop_rounding(const Layout& layout, const Basis& basis, Combination& combin
 
 }  // namespace
 
+bool wild(const Sums& sums, const PassRequest& request) {
+  // The constant's score is the counts' sum less the means'.
+  return request.aim == Aim::step && !(sums.gradient[0] > -4 * request.events);
+}
+
 Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
                Eigen::VectorXd& gamma, const PassRequest& request, const Work& work) {
   Settled settled;
@@ -114,7 +119,7 @@ Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Fa
     settled.factor = factorise(settled.information, layout.coefficients, doubtful_share);
     std::vector<std::size_t> doubtful = settled.factor.dependent;
     settled.condition = std::max(settled.condition, 1 / std::sqrt(settled.factor.least_pivot));
-    if (doubtful.empty()) return settled;
+    if (doubtful.empty() || wild(settled.sums, request)) return settled;
     std::sort(doubtful.begin(), doubtful.end());
     std::vector<Combined> combined;
     for (const std::size_t j : doubtful) {

@@ -30,6 +30,10 @@ struct Settled {
 /// The share of a column's information below which it is looked at row by row.
 constexpr double doubtful_share = 1e-7;
 
+/// True where fitted means run far beyond the counts: a step too long, whose weights say nothing of the
+/// columns.
+bool wild(const Sums& sums, const PassRequest& request);
+
 /// Passes over the rows until every active working column stands on its own; `basis` loses the aliased
 /// columns and takes in combined ones. Coefficients in `gamma` whose column changes become 0.
 Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Family& family,

@@ -190,7 +190,7 @@ GlmFit fit_poisson(const Design& design, const GlmData& data, const Work& work) 
     return fit;
   }
 
-  NewtonResult result = newton(model->layout, model->basis, model->data, family, totals.log_rate, work);
+  NewtonResult result = newton(model->layout, model->basis, model->data, family, totals, work);
   if (!result.gamma.allFinite()) refuse_not_finite(model->layout);
   model->gamma = std::move(result.gamma);
   model->information = std::move(result.last.information);

@@ -4,6 +4,7 @@
 #pragma once
 
 #include "engine/models/dependence.hpp"
+#include "engine/models/totals.hpp"
 
 namespace countsel {
 
@@ -19,6 +20,6 @@ struct NewtonResult {
 /// Fits in the columns of `basis`, which may be straightened on the way. The deviance and its like in
 /// `last.sums` are those at `gamma`.
 NewtonResult newton(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
-                    double null_log_rate, const Work& work);
+                    const Totals& totals, const Work& work);
 
 }  // namespace countsel

@@ -157,7 +157,7 @@ void add_block(const BlockReader& block, const PassRequest& request, Scratch& s,
 }  // namespace
 
 std::size_t piece_count(std::size_t blocks, std::size_t weight) {
-  constexpr std::size_t most_doubles = 4u << 20;  // all pieces' sums together: 32 MB
+  constexpr std::size_t most_doubles = 1u << 20;  // all pieces' sums together: 8 MB
   const std::size_t by_rows = std::clamp<std::size_t>(blocks / 32, 1, 32);
   return std::min(by_rows, std::max<std::size_t>(2, most_doubles / std::max<std::size_t>(1, weight)));
 }

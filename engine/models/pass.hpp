@@ -23,6 +23,7 @@ struct PassRequest {
   bool cross = true;         ///< cross-products, or scores alone
   bool fit = false;          ///< deviance, Pearson's statistic and the null deviance
   double null_log_rate = 0;  ///< for the null deviance
+  double events = 0;         ///< weighted sum of the counts: fitted means far beyond it show a wild step
   std::size_t every = 1;     ///< blocks read: each `every`-th
   double start_rate = 1;     ///< for Aim::start: the overall rate
   /// May rewrite score and information of a block's rows before they are summed.
