@@ -1,6 +1,6 @@
 // protocol/data/columns.hpp -- a table's columns by name, all of one length.
 //
-// Checked by: tests/protocol/data_forms_test.py, tests/protocol/lengths_test.py.
+// Checked by: tests/protocol/data_forms_test.py, tests/protocol/cells_test.py.
 #pragma once
 
 #include <string>

@@ -2,7 +2,7 @@
 //
 // Every rule about cells (contract, section 3) is here: what is blank, what is a number, which rows are
 // left out, what is refused and where. Columns without trouble are not copied.
-// Checked by: tests/protocol/data/intake_test.cpp.
+// Checked by: tests/protocol/cells_test.py.
 #pragma once
 
 #include "protocol/data/only.hpp"

@@ -1,6 +1,6 @@
 // protocol/data/source.hpp -- which table a request is about: sent with it, held, or a file.
 //
-// Checked by: tests/protocol/data/source_test.cpp, tests/protocol/hostile_test.py.
+// Checked by: tests/protocol/data_forms_test.py, tests/protocol/files_test.py.
 #pragma once
 
 #include <filesystem>

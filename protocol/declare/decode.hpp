@@ -2,7 +2,7 @@
 //
 // Reads the declaration and nothing else: what is unknown, of the wrong type or out of bounds is
 // refused here, with the nearest known name or the values allowed.
-// Checked by: tests/protocol/declare/decode_test.cpp.
+// Checked by: tests/protocol/request_keys_test.py, tests/protocol/catalogue_test.py.
 #pragma once
 
 #include "protocol/declare/question.hpp"

@@ -1,6 +1,6 @@
 // protocol/services/quick.hpp -- a line as spoken in a meeting becomes a request.
 //
-// Checked by: tests/protocol/services/quick_test.cpp.
+// Checked by: tests/protocol/quick_test.py.
 #pragma once
 
 #include <string>

@@ -4,10 +4,10 @@
 #include <algorithm>
 #include <cctype>
 #include <charconv>
-#include <cmath>
 #include <vector>
 
 #include "engine/refusal.hpp"
+#include "protocol/wire/brief.hpp"
 
 namespace countsel {
 namespace {
@@ -38,7 +38,7 @@ Token read_number_token(std::string_view line, std::size_t& at) {
       if (run - 1 != 3 || plain.find('.') != std::string::npos || !(first || later)) {
         throw Refusal(
             Code::bad_value,
-            "\"" + std::string(line.substr(from, at + run - from)) + "\" could be read in two ways.", {},
+            "\"" + brief(line.substr(from, at + run - from)) + "\" could be read in two ways.", {},
             "Write decimals with a point, as in 3.5; a comma only before three digits, as in 3,400.");
       }
       ++at;
@@ -60,8 +60,10 @@ Token read_number_token(std::string_view line, std::size_t& at) {
     }
   }
   Token token{Token::number, 0, std::string(line.substr(from, at - from))};
-  std::from_chars(plain.data(), plain.data() + plain.size(), token.value);
-  if (!std::isfinite(token.value)) cannot_read("\"" + token.text + "\" is too large a number.");
+  const auto [end, error] = std::from_chars(plain.data(), plain.data() + plain.size(), token.value);
+  if (error != std::errc() || end != plain.data() + plain.size()) {
+    cannot_read("\"" + brief(token.text) + "\" is no number that can be used.");
+  }
   return token;
 }
 
@@ -119,7 +121,7 @@ class Reader {
       } else if (tokens_[at_].kind == Token::question && at_ + 1 == tokens_.size()) {
         ++at_;
       } else {
-        cannot_read("The line cannot be read from \"" + tokens_[at_].text + "\" on.");
+        cannot_read("The line cannot be read from \"" + brief(tokens_[at_].text) + "\" on.");
       }
     }
     return line;
@@ -224,7 +226,8 @@ class Reader {
   void closing() {
     while (at_ < tokens_.size() && (tokens_[at_].kind == Token::word || tokens_[at_].kind == Token::question))
       ++at_;
-    if (at_ < tokens_.size()) cannot_read("The line cannot be read from \"" + tokens_[at_].text + "\" on.");
+    if (at_ < tokens_.size())
+      cannot_read("The line cannot be read from \"" + brief(tokens_[at_].text) + "\" on.");
   }
 
   std::vector<Token> tokens_;

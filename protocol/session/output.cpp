@@ -19,6 +19,11 @@ std::uint64_t Output::reserve() {
 void Output::as_finished(bool value) {
   const std::lock_guard lock(mutex_);
   as_finished_ = value;
+  if (!value) return;
+  for (auto& [place, line] : waiting_) {
+    if (line) send(*line);
+    line.reset();
+  }
 }
 
 void Output::send(std::string& line) {
@@ -41,23 +46,16 @@ void Output::send(std::string& line) {
 
 void Output::reply(std::uint64_t place, std::string line) {
   const std::lock_guard lock(mutex_);
-  if (!as_finished_ && place != next_sent_) {
-    waiting_.emplace(place, std::move(line));
-    return;
-  }
-  send(line);
-  if (place == next_sent_) {
-    ++next_sent_;
+  if (as_finished_) {
+    send(line);
+    waiting_.emplace(place, std::nullopt);
   } else {
-    waiting_.emplace(place, std::string());  // sent already
+    waiting_.emplace(place, std::move(line));
   }
-  for (auto first = waiting_.begin(); first != waiting_.end() && (first->first == next_sent_ || as_finished_);
-       first = waiting_.begin()) {
-    const bool in_turn = first->first == next_sent_;
-    if (!in_turn && first->second.empty()) break;
-    if (!first->second.empty()) send(first->second);
-    if (in_turn) ++next_sent_;
-    waiting_.erase(first);
+  while (!waiting_.empty() && waiting_.begin()->first == next_sent_) {
+    if (auto& turn = waiting_.begin()->second) send(*turn);
+    waiting_.erase(waiting_.begin());
+    ++next_sent_;
   }
 }
 

@@ -1,9 +1,12 @@
 // protocol/session/output.hpp -- replies in the order of their requests, or as they are finished.
+//
+// Checked by: tests/protocol/session/output_test.cpp, tests/protocol/output_test.py.
 #pragma once
 
 #include <cstdint>
 #include <map>
 #include <mutex>
+#include <optional>
 #include <string>
 
 namespace countsel {
@@ -27,7 +30,7 @@ class Output {
   std::mutex mutex_;
   bool as_finished_ = false;
   std::uint64_t next_place_ = 0, next_sent_ = 0;
-  std::map<std::uint64_t, std::string> waiting_;
+  std::map<std::uint64_t, std::optional<std::string>> waiting_;  // nothing: sent already, before its turn
 };
 
 }  // namespace countsel

@@ -2,7 +2,7 @@
 //
 // The reader's thread reads a line, does at once what later lines must see (hold, release, cancel), and
 // hands the rest to the pool. Small questions are answered on the spot while nothing is pending.
-// Checked by: tests/protocol/session_test.py, tests/protocol/hostile_test.py.
+// Checked by: tests/protocol/replies_test.py, stopping_slow_test.py and output_test.py.
 #pragma once
 
 #include <atomic>

@@ -1,7 +1,7 @@
 // protocol/wire/reply.hpp -- an answer or a refusal as one line.
 //
 // Headings and rounded texts are made here from the declaration, so that every host shows the same.
-// Checked by: tests/protocol/wire/reply_test.cpp and the transcripts.
+// Checked by: tests/protocol/answer_parts_test.py and the transcripts.
 #pragma once
 
 #include <string>

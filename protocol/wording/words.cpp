@@ -15,6 +15,12 @@ bool ends(const std::string& text, const char* end) {
 }
 
 std::string singular_word(const std::string& word) {
+  for (const auto* same : {"series", "species"}) {
+    if (word == same || ends(word, same)) return word;
+  }
+  for (const auto* end : {"buses", "iruses", "atuses"}) {
+    if (word == end || ends(word, end)) return word.substr(0, word.size() - 2);
+  }
   if (ends(word, "ies") && word.size() > 4) return word.substr(0, word.size() - 3) + "y";
   for (const auto* end : {"ches", "shes", "sses", "xes"}) {
     if (ends(word, end)) return word.substr(0, word.size() - 2);
