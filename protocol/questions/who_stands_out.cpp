@@ -201,6 +201,9 @@ Answer answer(const WhoStandsOut& asked, Context& context) {
 
   const double benchmark = result.model.benchmark * base.scale;
   const bool ratio = asked.expected.given;
+  // A benchmark that was given has all its digits; one that was found has those it supports.
+  const std::string said_benchmark =
+      std::isnan(base.benchmark) ? significant_text(benchmark, 3) : given_text(benchmark);
   const SaidUnits said{.labels = labels,
                        .funnel = result,
                        .p_adjusted = p_adjusted,
