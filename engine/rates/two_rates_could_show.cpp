@@ -19,9 +19,12 @@
 namespace countsel {
 namespace {
 
+constexpr double infinity = std::numeric_limits<double>::infinity();
 constexpr double nan = std::numeric_limits<double>::quiet_NaN();
 constexpr double often_enough = 0.8;
 constexpr double e_test_summed = 150;  // expected events of both up to which the E-test draws its own region
+constexpr double never = 1e17;         // no count of group 1 that rejects up to here: none is taken to
+constexpr int most_steps = 40;         // from the bound given the sum to the E-test's own
 constexpr double reach = 8;            // standard deviations of a count that are looked at
 constexpr double most_bounds =
     20000;  // of the reference's counts; beyond that every so many'th stands for its like
@@ -60,12 +63,14 @@ struct Question {
   }
 };
 
-// Where the increasing f turns positive, from 0 on; NaN where it is so at 0 already.
+// Where the increasing f turns positive, from 0 on; NaN where it is so at 0 already, infinity where it never
+// is (the E-test's two-sided value need not fall to 0: with very unequal exposures the far tail stays).
 double crossing(const Function& f, double guess, double spread) {
   if (f(0) > 0) return nan;
   double low = std::max(0.0, guess - spread), high = std::max(guess, 0.0) + spread;
   while (low > 0 && f(low) > 0) low = std::max(0.0, low - (spread *= 2));
-  while (f(high) <= 0) high += (spread *= 2);
+  while (f(high) <= 0)
+    if ((high += (spread *= 2)) > never) return infinity;
   return bracketed_root(f, low, high);
 }
 // A first guess at the bound: where the score deviate takes its one-sided quantile z, from
@@ -96,13 +101,19 @@ double whole_bound(const Question& question, double j) {
   return question.margin(whole + 1, j) >= 0 ? whole + 1 : whole;
 }
 
-// The E-test's own bound, by steps from mid-p's, which is never far.
+// The E-test's own bound, by steps from the one given the sum, which is not far.
 double e_test_bound(const Question& question, double j) {
-  const double inward = question.larger() ? -1 : 1;
-  double bound = std::max(0.0, whole_bound(question, j));
-  while (!question.e_test_rejects(bound, j))
-    if ((bound -= inward) < 0) return -1;
-  while (bound + inward >= 0 && question.e_test_rejects(bound + inward, j)) bound += inward;
+  const double inward = question.larger() ? -1 : 1, start = whole_bound(question, j);
+  if (std::isinf(start)) return start;
+  double bound = std::max(0.0, start);
+  int steps = 0;
+  while (!question.e_test_rejects(bound, j)) {
+    bound -= inward;
+    if (bound < 0) return -1;
+    if (++steps > most_steps) return infinity;
+  }
+  while (bound + inward >= 0 && ++steps <= most_steps && question.e_test_rejects(bound + inward, j))
+    bound += inward;
   return bound;
 }
 
@@ -134,7 +145,7 @@ bool interpolate(const Question& question, std::vector<Node>& nodes) {
     place[k] = (from + to) / 2 + (to - from) / 2 * std::cos(angle);
     value[k] = real_bound(question, place[k] * place[k]);
     weight[k] = (k % 2 == 0 ? 1 : -1) * std::sin(angle);
-    if (std::isnan(value[k])) return false;
+    if (!std::isfinite(value[k])) return false;
   }
   for (Node& node : nodes) {
     const double at = std::sqrt(node.j);
@@ -201,7 +212,9 @@ class TailTable {
 using Power = std::function<double(double ratio)>;
 
 Power power_over_counts(const Question& question) {
-  return [nodes = nodes_of(question), larger = question.larger(), mean1 = question.mean1](double ratio) {
+  std::vector<Node> nodes = nodes_of(question);
+  std::erase_if(nodes, [](const Node& node) { return std::isinf(node.bound) || node.bound < 0; });
+  return [nodes = std::move(nodes), larger = question.larger(), mean1 = question.mean1](double ratio) {
     const double mean = ratio * mean1;
     double power = 0;
     if (mean < 2 * fine_lattice) {
@@ -228,9 +241,11 @@ Power power_over_grid(const Question& question) {
   }
   return [nodes, total, larger = question.larger(), mean1 = question.mean1](double ratio) {
     double power = 0;
-    for (const auto& [weight, j, bound] : nodes)
+    for (const auto& [weight, j, bound] : nodes) {
+      if (!std::isfinite(bound)) continue;
       power += weight / total *
                (larger ? gamma_below(bound + 0.5, ratio * mean1) : gamma_above(bound + 0.5, ratio * mean1));
+    }
     return power;
   };
 }
@@ -242,11 +257,12 @@ double nearest(const Question& question) {
   const auto lack = [&](double log_ratio) { return power(std::exp(log_ratio)) - often_enough; };
   if (lack(0) >= 0) return 1;
   if (!question.larger() && !(power(0) >= often_enough)) return nan;
-  const double way = question.larger() ? 1 : -1;
+  const double way = question.larger() ? 1 : -1, farthest = 690;
   double near = 0, step = 2 / std::sqrt(std::min(question.mean1, question.mean0) + 4), far = way * step;
-  while (lack(far) < 0 && std::abs(far) < 700) {
+  while (lack(far) < 0) {
+    if (std::abs(far) == farthest) return nan;
     near = far;
-    far += way * (step *= 2);
+    far = way * std::min(farthest, std::abs(far) + (step *= 2));
   }
   return std::exp(bracketed_root(lack, std::min(near, far), std::max(near, far)));
 }

@@ -90,6 +90,20 @@ TEST_CASE("the continuum takes over without a step") {
   }
 }
 
+TEST_CASE("far from even exposures: what cannot be shown is NaN, and nothing runs away") {
+  // Nearly all exposure is group 1's, so without an event in the reference no ratio above 1 can be shown.
+  CHECK(std::isnan(could_show({5, 1e300, 0, 1}, TestMethod::exact, 0.95, Direction::either).above));
+  // The E-test's far tail stays near a half when group 1 has next to no exposure.
+  CHECK(std::isnan(could_show({5, 1e-300, 3, 1}, TestMethod::e_test, 0.95, Direction::either).above));
+  for (const TestMethod method : all_methods)
+    for (const double exposure : {1e-300, 1e-3, 1e3, 1e300})
+      for (const double count : {0., 7., 9e15}) {
+        const CouldShow shown = could_show({count, exposure, 3, 1}, method, 0.95, Direction::either);
+        CHECK((std::isnan(shown.above) || shown.above >= 1));
+        CHECK((std::isnan(shown.below) || shown.below <= 1));
+      }
+}
+
 TEST_CASE("no events, and a level that is always reached") {
   const CouldShow none = could_show({0, 1, 0, 2}, TestMethod::exact, 0.95, Direction::either);
   CHECK(std::isnan(none.above));
