@@ -6,6 +6,8 @@
 #include <charconv>
 #include <cmath>
 
+#include "protocol/wire/large_counts.hpp"
+
 namespace countsel {
 namespace {
 
@@ -84,14 +86,6 @@ bool could_be_thousands(std::string_view text, char mark) {
   const auto at = text.find(mark);
   return at != std::string_view::npos && at >= 1 && at <= 3 && text[0] != '0' && digits(text.substr(0, at)) &&
          text.size() == at + 4 && digits(text.substr(at + 1));
-}
-
-double beyond_largest_count(double value, std::string_view written) {
-  constexpr double largest = 9007199254740992.0;
-  if (value != largest) return value;
-  written = written.substr(0, written.find('.'));
-  written.remove_prefix(std::min(written.find_first_not_of("+-0"), written.size()));
-  return written.size() == 16 && digits(written) && written > "9007199254740992" ? largest + 2 : value;
 }
 
 CellNumber read_number(std::string_view raw, const CellRules& rules) {

@@ -35,10 +35,6 @@ bool could_be_thousands(std::string_view text, char mark);
 /// Reads a text as a number under the rules given; `value` is finite.
 CellNumber read_number(std::string_view text, const CellRules& rules);
 
-/// The double nearest to the number that `digits` writes is `value`. Where that is 2^53 though more was
-/// written, the next double: what is beyond the largest count must not be rounded back to it.
-double beyond_largest_count(double value, std::string_view digits);
-
 /// A host's error text: #N/A, #DIV/0!, #REF!, Err:502, …
 bool error_text(std::string_view text);
 

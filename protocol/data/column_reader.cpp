@@ -7,13 +7,13 @@
 
 #include "protocol/data/cells.hpp"
 #include "protocol/wire/brief.hpp"
+#include "protocol/wire/large_counts.hpp"
 #include "protocol/wording/words.hpp"
 
 namespace countsel {
 namespace {
 
 constexpr double nan = std::numeric_limits<double>::quiet_NaN();
-constexpr double largest_count = 9007199254740992.0;  // 2^53
 
 bool holds_numbers(Holds holds) {
   return holds != Holds::levels && holds != Holds::label && holds != Holds::order;

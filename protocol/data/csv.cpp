@@ -10,6 +10,7 @@
 #include "engine/refusal.hpp"
 #include "protocol/data/cells.hpp"
 #include "protocol/data/utf8.hpp"
+#include "protocol/wire/large_counts.hpp"
 #include "protocol/wire/limits.hpp"
 
 namespace countsel {

@@ -99,6 +99,16 @@ std::vector<Token> tokens_of(std::string_view line) {
   return tokens;
 }
 
+/// Shifted in the text, so that 99.9% is the double nearest to 0.999.
+double hundredth(const Token& percent) {
+  double value = percent.value / 100;
+  const std::string shifted = percent.text + "e-2";
+  double exact = 0;
+  const auto [end, error] = std::from_chars(shifted.data(), shifted.data() + shifted.size(), exact);
+  if (error == std::errc() && end == shifted.data() + shifted.size()) value = exact;
+  return value;
+}
+
 class Reader {
  public:
   explicit Reader(std::vector<Token> tokens) : tokens_(std::move(tokens)) {}
@@ -214,6 +224,7 @@ class Reader {
     if (!unit.empty()) line.per_unit = unit;
   }
   void level(SpokenLine& line) {
+    const std::size_t from = at_;
     const double percent = number("after \"at\" comes a level such as 95%");
     if (at_ < tokens_.size() && tokens_[at_].kind == Token::percent) {
       ++at_;
@@ -221,7 +232,7 @@ class Reader {
       cannot_read("After \"at\" comes a level with its sign, such as 95%.");
     }
     if (!(percent > 0 && percent < 100)) cannot_read("The level lies between 0% and 100%.");
-    line.confidence = percent / 100;
+    line.confidence = hundredth(tokens_[from]);
   }
   void closing() {
     while (at_ < tokens_.size() && (tokens_[at_].kind == Token::word || tokens_[at_].kind == Token::question))

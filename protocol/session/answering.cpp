@@ -30,9 +30,10 @@ std::uint64_t digest_of(const Question& question, const Json& with, const Asked&
   const auto number = [&state](std::uint64_t part) { XXH3_64bits_update(&state, &part, sizeof part); };
   text(question.name);
   for (const auto& option : question.options) {
-    const auto given = with.is_object() ? with.find(option.name) : with.end();
+    Json value = with.is_object() ? with.value(option.name, Json()) : Json();
+    if (value.is_null()) value = option.get(defaults);
     text(option.name);
-    text(with.is_object() && given != with.end() ? given->dump() : option.get(defaults).dump());
+    text(value.is_number() ? number_text(value.get<double>()) : value.dump());
   }
   for (std::size_t i = 0; i < casting.roles.size(); ++i) {
     // A digest of withheld counts would let them be found by trying.

@@ -7,6 +7,7 @@
 #include <string_view>
 
 #include "protocol/wire/brief.hpp"
+#include "protocol/wire/large_counts.hpp"
 
 namespace countsel {
 namespace {
@@ -132,14 +133,10 @@ bool RequestHandler::number_integer(std::int64_t value) {
   return scalar(Whole<std::int64_t>{value, static_cast<double>(value)});
 }
 bool RequestHandler::number_unsigned(std::uint64_t value) {
-  // Beyond 2^53 a double may round back into the allowed range of counts; it must stay beyond.
-  constexpr double largest = 9007199254740992.0;
-  double number = static_cast<double>(value);
-  if (value > (std::uint64_t{1} << 53) && number <= largest) number = largest + 2;
-  return scalar(Whole<std::uint64_t>{value, number});
+  return scalar(Whole<std::uint64_t>{value, beyond_largest_count(value)});
 }
 bool RequestHandler::number_float(double value, const std::string& written) {
-  return scalar(Number{value, written});
+  return scalar(Number{beyond_largest_count(value, written), written});
 }
 bool RequestHandler::string(std::string& value) { return scalar(Text{value}); }
 

@@ -3,6 +3,8 @@
 
 #include <doctest/doctest.h>
 
+#include "protocol/wire/large_counts.hpp"
+
 namespace countsel {
 namespace {
 
@@ -83,7 +85,7 @@ TEST_CASE("texts that are no numbers") {
 }
 
 TEST_CASE("what is beyond 2^53 stays beyond") {
-  constexpr double largest = 9007199254740992.0;
+  constexpr double largest = largest_count;
   CHECK(number("9007199254740992") == largest);
   CHECK(number("9007199254740992.4") == largest);
   CHECK(number("9007199254740993") > largest);

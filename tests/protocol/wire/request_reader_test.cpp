@@ -56,13 +56,14 @@ TEST_CASE("cells of every kind") {
 }
 
 TEST_CASE("numbers beyond 2^53 stay beyond") {
-  const Request request =
-      read_request(R"({"of":{"a":[9007199254740992,9007199254740993,18446744073709551615,-1]}})");
+  const Request request = read_request(
+      R"({"of":{"a":[9007199254740992,9007199254740993,18446744073709551615,-1,9007199254740993.0]}})");
   const auto& numbers = request.of.direct[0].numbers;
   CHECK(numbers[0] == 9007199254740992.0);
   CHECK(numbers[1] > 9007199254740992.0);
   CHECK(numbers[2] == 18446744073709551616.0);
   CHECK(numbers[3] == -1);
+  CHECK(numbers[4] > 9007199254740992.0);
 }
 
 TEST_CASE("a range is turned into columns") {
