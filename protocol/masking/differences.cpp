@@ -83,6 +83,13 @@ Cells taken_out(const Cells& cells, const std::vector<char>& withheld, bool coun
   return left;
 }
 
+/// The declared style of a figure; `number` where it is not declared.
+Style figure_style(const Question& question, const std::string& name) {
+  for (const auto& spec : question.figures)
+    if (spec.name == name) return spec.style;
+  return Style::number;
+}
+
 template <class T>
 void keep(std::vector<T>& items, const std::vector<char>& withheld) {
   std::vector<T> left;
@@ -192,12 +199,22 @@ void add_differences(const Answer& answer, const Answer& other, Withheld& withhe
     if (!same(answer.picture->lines[i].second, other.picture->lines[i].second)) withheld.lines[i] = 1;
 }
 
+bool derived(Style style) {
+  return style == Style::rate || style == Style::every || style == Style::ratio || style == Style::log ||
+         style == Style::p_value || style == Style::statistic || style == Style::share;
+}
+
+void withhold_derived_figures(const Question& question, const Answer& answer, Withheld& withheld) {
+  bool any = false;
+  for (std::size_t i = 0; i < answer.figures.size(); ++i)
+    any |= withheld.figures[i] && derived(figure_style(question, answer.figures[i].first));
+  for (std::size_t i = 0; any && i < answer.figures.size(); ++i)
+    if (derived(figure_style(question, answer.figures[i].first))) withheld.figures[i] = 1;
+}
+
 void withhold_all(const Question& question, const Answer& answer, Withheld& withheld) {
   for (std::size_t i = 0; i < answer.figures.size(); ++i) {
-    const auto spec =
-        std::find_if(question.figures.begin(), question.figures.end(),
-                     [&](const FigureSpec& one) { return one.name == answer.figures[i].first; });
-    withheld.figures[i] = spec == question.figures.end() || spec->style != Style::exposure;
+    withheld.figures[i] = figure_style(question, answer.figures[i].first) != Style::exposure;
   }
   for (std::size_t t = 0; t < answer.tables.size(); ++t) {
     bool counted = false;  // what stands before the first count says which row it is
@@ -221,9 +238,7 @@ void take_out(const Question& question, const Withheld& withheld, const std::str
   for (std::size_t i = 0; i < answer.figures.size(); ++i) {
     if (!withheld.figures[i]) continue;
     auto& [name, figure] = answer.figures[i];
-    const bool counts = std::any_of(
-        question.figures.begin(), question.figures.end(),
-        [&, of = name](const FigureSpec& one) { return one.name == of && one.style == Style::count; });
+    const bool counts = figure_style(question, name) == Style::count;
     figure = counts ? Figure(mark) : Figure(nan);
   }
   for (std::size_t t = 0; t < answer.tables.size(); ++t) {
