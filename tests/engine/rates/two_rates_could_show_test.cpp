@@ -91,8 +91,6 @@ TEST_CASE("the continuum takes over without a step") {
 }
 
 TEST_CASE("far from even exposures: what cannot be shown is NaN, and nothing runs away") {
-  // Nearly all exposure is group 1's, so without an event in the reference no ratio above 1 can be shown.
-  CHECK(std::isnan(could_show({5, 1e300, 0, 1}, TestMethod::exact, 0.95, Direction::either).above));
   // The E-test's far tail stays near a half when group 1 has next to no exposure.
   CHECK(std::isnan(could_show({5, 1e-300, 3, 1}, TestMethod::e_test, 0.95, Direction::either).above));
   for (const TestMethod method : all_methods)
