@@ -33,16 +33,17 @@ inline Share share_of(double p) {
   return {p, rest.high, 0, rest.low};
 }
 
-/// The share `times` a : b, scaled so that neither part overflows. times, a, b above 0. Parts further apart than a
-/// double reaches are taken to be as far apart as it does: neither becomes 0.
+/// The share `times` a : b, scaled so that neither part overflows. times, a, b above 0. Parts further apart
+/// than a double reaches are taken to be as far apart as it does: neither becomes 0.
 inline Share share_of_odds(double times, double a, double b) {
   int exponent_times, exponent_a, exponent_b;
   const Pair part = two_product(std::frexp(times, &exponent_times), std::frexp(a, &exponent_a));
   const double rest = std::frexp(b, &exponent_b);
   const int shift = exponent_times + exponent_a - exponent_b;
   constexpr double least = std::numeric_limits<double>::min();
-  return shift > 0 ? Share{part.high, std::max(std::ldexp(rest, -shift), least), part.low, 0}
-                   : Share{std::max(std::ldexp(part.high, shift), least), rest, std::ldexp(part.low, shift), 0};
+  return shift > 0
+             ? Share{part.high, std::max(std::ldexp(rest, -shift), least), part.low, 0}
+             : Share{std::max(std::ldexp(part.high, shift), least), rest, std::ldexp(part.low, shift), 0};
 }
 
 /// (a rest - b part) / (part + rest): how far a of a + b lies above its expectation, to the last place.
