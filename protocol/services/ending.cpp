@@ -9,8 +9,9 @@ struct Nothing : Asked {};
 
 Answer stop(const Nothing&, Context& context) {
   const std::string& id = context.request->of.id;
-  if (context.request->of.rest.contains("id") && id.empty()) {
-    bind::wrong_type("of.id", "the id of a request, text or a whole number", context.request->of.rest["id"]);
+  const Json given = context.request->of.rest.value("id", Json());
+  if (id.empty() && !given.is_null()) {
+    bind::wrong_type("of.id", "the id of a request, text or a whole number", given);
   }
   if (id.empty()) {
     throw Refusal(Code::missing, "cancel needs of.id, the id of the request to end.", {},
