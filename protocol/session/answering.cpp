@@ -11,6 +11,7 @@
 #include "protocol/declare/decode.hpp"
 #include "protocol/declare/nearest.hpp"
 #include "protocol/masking/mask.hpp"
+#include "protocol/session/memory.hpp"
 #include "protocol/session/quiet_look.hpp"
 #include "protocol/wire/brief.hpp"
 #include "protocol/wire/reply.hpp"
@@ -104,6 +105,7 @@ Reply answer_request(Request& request, const Question& question, std::shared_ptr
     set_options(question, request.with, *asked);
     if (!question.roles.empty()) {
       places = Places(data, origin_of(rest).value_or(data.origin));
+      check_room(data.rows(), data.columns.size());
       context.casting = &casting;
       context.places = &places;
       if (!question.as_sent) take_in(question, data, casting, places, *asked, context.notes);
