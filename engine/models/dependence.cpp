@@ -109,6 +109,79 @@ bool wild(const Sums& sums, const PassRequest& request) {
   return request.aim == Aim::step && !(sums.gradient[0] > -4 * request.events);
 }
 
+namespace {
+
+/// A doubtful column with what the others explain taken away.
+struct Examined {
+  std::size_t coefficient = 0;
+  Combination remainder;  ///< in raw columns, the coefficient's own first
+  Eigen::VectorXd taken;  ///< of the working columns
+  double before = 0;      ///< weighted sum of squares of the column itself
+  Remainder size;
+  bool vanishes = false;
+};
+
+Examined examine(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
+                 const Eigen::VectorXd& gamma, const PassRequest& request, const Settled& now, std::size_t j,
+                 const Work& work) {
+  Examined one{j,
+               working_column(layout, basis, j),
+               Eigen::VectorXd::Zero(gamma.size()),
+               own_information(now.information, j),
+               {},
+               false};
+  if (one.before == 0) {
+    one.vanishes = true;
+    return one;
+  }
+  const auto take_away = [&](const Eigen::VectorXd& share) {
+    one.taken += share;
+    for (std::size_t k = 0; k < layout.coefficients; ++k)
+      if (share[k] != 0) add_to(one.remainder, working_column(layout, basis, k), -share[k]);
+  };
+  take_away(regress(now.factor, now.information, j));
+  one.vanishes = vanishes_by_code(layout, now.sums, one.remainder);
+  // A remainder of this size is rounding even in a row where the column itself is 0.
+  const double floor =
+      1e-12 * std::fabs(one.remainder.front().second.value()) * column_size(layout, basis, j);
+  // Two corrections bring the remainder from the factor's digits to those of double-double.
+  Eigen::VectorXd products;
+  for (int round = 0; round < 3 && !one.vanishes; ++round) {
+    one.size = measure(layout, basis, data, family, gamma, request, make_form(layout, one.remainder), floor,
+                       products, work);
+    if (round < 2) take_away(solve(now.factor, products));
+  }
+  one.vanishes = one.vanishes || one.size.worst <= rounding_share || one.size.square == 0;
+  return one;
+}
+
+void leave_out(const Layout& layout, Basis& basis, Combination remainder, std::size_t j,
+               std::vector<LeftOut>& left_out) {
+  drop_rounding(layout, basis, remainder);
+  const double own = remainder.front().second.value();
+  for (auto& [k, multiple] : remainder) multiple = DoubleDouble(multiple.value() / own);
+  basis.active[j] = 0;
+  Combination onto;
+  for (std::size_t i = 1; i < remainder.size(); ++i)
+    onto.emplace_back(remainder[i].first, -remainder[i].second);
+  basis.aliases.emplace_back(j, std::move(onto));
+  left_out.push_back({j, std::move(remainder)});
+}
+
+void straighten(const Layout& layout, Basis& basis, const Examined& one) {
+  const std::size_t j = one.coefficient;
+  const double spread = std::sqrt(one.size.square / one.size.weight);
+  Combined column{j, one.remainder, make_form(layout, one.remainder), std::ldexp(1.0, -std::ilogb(spread))};
+  if (basis.combined_of[j] >= 0) {
+    basis.combined[basis.combined_of[j]] = std::move(column);
+  } else {
+    basis.combined_of[j] = static_cast<std::ptrdiff_t>(basis.combined.size());
+    basis.combined.push_back(std::move(column));
+  }
+}
+
+}  // namespace
+
 Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
                Eigen::VectorXd& gamma, const PassRequest& request, const Work& work) {
   Settled settled;
@@ -121,56 +194,22 @@ Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Fa
     settled.condition = std::max(settled.condition, 1 / std::sqrt(settled.factor.least_pivot));
     if (doubtful.empty() || wild(settled.sums, request)) return settled;
     std::sort(doubtful.begin(), doubtful.end());
-    std::vector<Combined> combined;
-    for (const std::size_t j : doubtful) {
-      Combination remainder = working_column(layout, basis, j);
-      const double before = own_information(settled.information, j);
-      Remainder size;
-      bool vanishes = before == 0;
-      if (!vanishes) {
-        const Eigen::VectorXd explained = regress(settled.factor, settled.information, j);
-        const auto take_away = [&](const Eigen::VectorXd& share) {
-          for (std::size_t k = 0; k < layout.coefficients; ++k)
-            if (share[k] != 0) add_to(remainder, working_column(layout, basis, k), -share[k]);
-        };
-        take_away(explained);
-        vanishes = vanishes_by_code(layout, settled.sums, remainder);
-        // A remainder of this size is rounding even in a row where the column itself is 0.
-        const double floor = 1e-12 * std::fabs(remainder.front().second.value()) *
-                             column_size(layout, basis, remainder.front().first);
-        // Two corrections bring the remainder from the factor's digits to those of double-double.
-        Eigen::VectorXd products;
-        for (int round = 0; round < 3 && !vanishes; ++round) {
-          size = measure(layout, basis, data, family, gamma, request, make_form(layout, remainder), floor,
-                         products, work);
-          if (round < 2) take_away(solve(settled.factor, products));
-        }
-        vanishes = vanishes || size.worst <= rounding_share || size.square == 0;
-      }
-      gamma[j] = 0;
-      if (vanishes) {
-        drop_rounding(layout, basis, remainder);
-        const DoubleDouble own = remainder.front().second;
-        for (auto& [k, multiple] : remainder) multiple = DoubleDouble(multiple.value() / own.value());
-        basis.active[j] = 0;
-        Combination onto;
-        for (std::size_t i = 1; i < remainder.size(); ++i)
-          onto.emplace_back(remainder[i].first, -remainder[i].second);
-        basis.aliases.emplace_back(j, std::move(onto));
-        settled.left_out.push_back({j, std::move(remainder)});
+    // All are examined in the basis as it is, and only then is it changed.
+    std::vector<Examined> examined;
+    for (const std::size_t j : doubtful)
+      examined.push_back(examine(layout, basis, data, family, gamma, request, settled, j, work));
+    for (Examined& one : examined) {
+      const std::size_t j = one.coefficient;
+      // The predictors stay what they were: what the column held goes to those it is made of.
+      gamma += gamma[j] * one.taken;
+      if (one.vanishes) {
+        gamma[j] = 0;
+        leave_out(layout, basis, std::move(one.remainder), j, settled.left_out);
         continue;
       }
-      const double spread = std::sqrt(size.square / size.weight);
-      settled.condition = std::max(settled.condition, std::sqrt(before / size.square));
-      Combined column{j, remainder, make_form(layout, remainder), std::ldexp(1.0, -std::ilogb(spread))};
-      if (basis.combined_of[j] >= 0)
-        basis.combined[basis.combined_of[j]] = std::move(column);
-      else
-        combined.push_back(std::move(column));
-    }
-    for (Combined& column : combined) {
-      basis.combined_of[column.coefficient] = static_cast<std::ptrdiff_t>(basis.combined.size());
-      basis.combined.push_back(std::move(column));
+      settled.condition = std::max(settled.condition, std::sqrt(one.before / one.size.square));
+      straighten(layout, basis, one);
+      gamma[j] /= basis.combined[basis.combined_of[j]].scale;
     }
   }
 }

@@ -35,7 +35,7 @@ constexpr double doubtful_share = 1e-7;
 bool wild(const Sums& sums, const PassRequest& request);
 
 /// Passes over the rows until every active working column stands on its own; `basis` loses the aliased
-/// columns and takes in combined ones. Coefficients in `gamma` whose column changes become 0.
+/// columns and takes in combined ones. `gamma` follows, so that the predictors stay.
 Settled settle(const Layout& layout, Basis& basis, const RowData& data, const Family& family,
                Eigen::VectorXd& gamma, const PassRequest& request, const Work& work);
 

@@ -6,6 +6,7 @@
 // Source: Loader, Fast and accurate computation of binomial probabilities (2000).
 #include "engine/models/family.hpp"
 
+#include <algorithm>
 #include <cmath>
 
 #include "engine/models/kernel.hpp"
@@ -16,6 +17,17 @@ namespace {
 void poisson_step(std::size_t rows, const double* eta, const double* count, const double* exposure,
                   const double* weight, double* mean, double* score, double* information) {
   kernel().poisson_log(rows, eta, count, exposure, weight, mean, score, information);
+}
+
+/// The slope of the score's chord from the mean to the count: a row by itself then steps by log(count /
+/// mean).
+void poisson_damp(std::size_t rows, const double* count, const double* mean, const double* weight,
+                  double* information) {
+  for (std::size_t r = 0; r < rows; ++r)
+    if (count[r] > 1.5 * mean[r] && (!weight || weight[r] > 0)) {
+      const double ratio = count[r] / std::max(mean[r], 1e-300);
+      information[r] = (weight ? weight[r] : 1.0) * (count[r] - mean[r]) / std::log(ratio);
+    }
 }
 
 void poisson_fit(std::size_t rows, const double* count, const double* mean, const double* weight,
@@ -54,7 +66,7 @@ double poisson_saturated(double y) {
 }  // namespace
 
 const Family& poisson_log_family() {
-  static constexpr Family family{"poisson", poisson_step, poisson_fit, poisson_saturated, true};
+  static constexpr Family family{"poisson", poisson_step, poisson_damp, poisson_fit, poisson_saturated, true};
   return family;
 }
 

@@ -14,6 +14,10 @@ struct Family {
   /// included.
   void (*step)(std::size_t rows, const double* eta, const double* count, const double* exposure,
                const double* weight, double* mean, double* score, double* information);
+  /// Raises the information where a count lies far above its mean, so that a Newton step ends near the count
+  /// instead of far beyond it. Used far from the maximum alone; may be null.
+  void (*damp)(std::size_t rows, const double* count, const double* mean, const double* weight,
+               double* information);
   /// Adds weighted deviance and Pearson's statistic to sums[0] and sums[1].
   void (*fit)(std::size_t rows, const double* count, const double* mean, const double* weight, double* sums);
   /// The log-likelihood of a count at its own mean: what the deviance is measured from.

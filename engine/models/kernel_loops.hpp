@@ -149,9 +149,11 @@ void poisson_log(std::size_t rows, const double* eta, const double* count, const
     const Vec mu = load(exposure + r) * exp_vec(load(eta + r));
     Vec s = load(count + r) - mu, h = mu;
     if (weight) {
+      // A row of weight 0 may have any mean, even one beyond a double.
       const Vec w = load(weight + r);
-      s = s * w;
-      h = h * w;
+      const Bits live = w > fill_vec(0.0);
+      s = choose(live, s * w, Vec{});
+      h = choose(live, h * w, Vec{});
     }
     store(mean + r, mu);
     store(score + r, s);

@@ -4,6 +4,8 @@
 #include <algorithm>
 #include <cmath>
 
+#include "engine/models/line.hpp"
+
 namespace countsel {
 namespace {
 
@@ -26,10 +28,10 @@ std::size_t sampling_step(std::size_t rows, std::size_t parts) {
 
 }  // namespace
 
-VectorXd halfway_home(const VectorXd& gamma, double log_rate) {
-  VectorXd half = gamma / 2;
-  half[0] += log_rate / 2;
-  return half;
+VectorXd home(const Layout& layout, double log_rate) {
+  VectorXd gamma = VectorXd::Zero(static_cast<Index>(layout.coefficients));
+  gamma[0] = log_rate;
+  return gamma;
 }
 
 bool shorten_level_steps(const Layout& layout, const Basis& basis, VectorXd& step) {
@@ -47,8 +49,7 @@ bool shorten_level_steps(const Layout& layout, const Basis& basis, VectorXd& ste
 Start find_start(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
                  const Totals& totals, const Work& work) {
   Start start;
-  start.gamma = VectorXd::Zero(static_cast<Index>(layout.coefficients));
-  start.gamma[0] = totals.log_rate;
+  start.gamma = home(layout, totals.log_rate);
   PassRequest request;
   request.null_log_rate = totals.log_rate;
 
@@ -58,18 +59,11 @@ Start find_start(const Layout& layout, const Basis& basis, const RowData& data, 
   // What the last and largest sample costs saves a pass over all rows.
   if (sampled) rounds = {coarse, coarse, coarse, sampling_step(data.rows, 10), sampling_step(data.rows, 5)};
   Factor factor;
-  double share = 1;
   for (std::size_t round = 0; round < rounds.size(); ++round) {
     request.aim = round == 0 ? Aim::start : Aim::step;
     request.every = rounds[round];
-    share = 1.0 / static_cast<double>(request.every);
-    request.events = totals.events * share;
     const VectorXd from = round == 0 ? VectorXd::Zero(start.gamma.size()) : start.gamma;
     const Sums sums = run_pass(layout, basis, data, family, from, request, work);
-    if (wild(sums, request)) {
-      start.gamma = halfway_home(start.gamma, totals.log_rate);
-      continue;
-    }
     Information information = assemble(layout, basis, sums);
     VectorXd score = assemble_score(layout, basis, sums);
     if (sampled) {
@@ -79,28 +73,30 @@ Start find_start(const Layout& layout, const Basis& basis, const RowData& data, 
     factor = factorise(information, layout.coefficients, doubtful_share);
     VectorXd step = solve(factor, score);
     if (!step.allFinite()) continue;
+    if (round == 0) step -= start.gamma;  // least squares gives coefficients, not a step
     if (round > 0) shorten_level_steps(layout, basis, step);
-    start.gamma = from + step;
+    start.gamma += line_share(layout, basis, data, family, start.gamma, step, request.every, work) * step;
   }
-  if (!sampled || factor.coefficients == 0) return start;
+  if (!sampled) return start;
 
   // The sample's information is good enough for a first step on all rows, which then needs scores alone.
   request.aim = Aim::step;
+  const double share_read = 1.0 / static_cast<double>(request.every);
   request.every = 1;
   request.cross = false;
   request.events = totals.events;
-  for (start.passes = 1; start.passes < 20; ++start.passes) {
-    const Sums sums = run_pass(layout, basis, data, family, start.gamma, request, work);
-    if (wild(sums, request)) {
-      start.gamma = halfway_home(start.gamma, totals.log_rate);
-      continue;
-    }
-    const VectorXd score = assemble_score(layout, basis, sums);
-    start.step = solve(factor, score) * share;
-    shorten_level_steps(layout, basis, start.step);
-    start.rise = score.dot(start.step);
-    break;
+  Sums sums = run_pass(layout, basis, data, family, start.gamma, request, work);
+  start.passes = 1;
+  if (wild(sums, request)) {
+    // The sample missed rows that matter: go towards it only as far as all rows allow.
+    const VectorXd from = home(layout, totals.log_rate), towards = start.gamma - from;
+    start.gamma = from + line_share(layout, basis, data, family, from, towards, 1, work) * towards;
+    return start;
   }
+  const VectorXd score = assemble_score(layout, basis, sums);
+  start.step = solve(factor, score) * share_read;
+  shorten_level_steps(layout, basis, start.step);
+  start.rise = score.dot(start.step);
   return start;
 }
 

@@ -16,11 +16,11 @@ struct Start {
   int passes = 0;        ///< over all rows
 };
 
+/// The overall rate in every row.
+Eigen::VectorXd home(const Layout& layout, double log_rate);
+
 Start find_start(const Layout& layout, const Basis& basis, const RowData& data, const Family& family,
                  const Totals& totals, const Work& work);
-
-/// Half-way back to the overall rate in every row: from a start that is too far out.
-Eigen::VectorXd halfway_home(const Eigen::VectorXd& gamma, double log_rate);
 
 /// A level's Newton step up is exp(gap) - 1 where the level stands alone; its logarithm is the gap itself.
 /// True if a step was long enough to be shortened.
