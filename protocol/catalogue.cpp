@@ -3,17 +3,34 @@
 
 namespace countsel {
 
-extern const Question does_it_climb;
-extern const Question how_often, on_target, which_higher, do_they_differ, who_stands_out, how_likely,
-    is_it_poisson, what_drives;
+extern const Question how_often, on_target, which_higher, do_they_differ, who_stands_out, same_mix,
+    within_strata_question, rate_or_mix_question, does_it_climb, how_likely, is_it_poisson, what_drives;
 extern const Question hello, questions, quick, look_over, hold, held, release, condense, cancel, goodbye;
 
 const std::vector<const Question*>& catalogue() {
   static const std::vector<const Question*> all = {
-      &how_often,     &on_target,  &which_higher,  &do_they_differ, &who_stands_out,
-      &does_it_climb, &how_likely, &is_it_poisson, &what_drives,  // about rates
-      &hello,         &questions,  &quick,         &look_over,      &hold,
-      &held,          &release,    &condense,      &cancel,         &goodbye,
+      &how_often,
+      &on_target,
+      &which_higher,
+      &do_they_differ,
+      &who_stands_out,
+      &same_mix,
+      &within_strata_question,
+      &rate_or_mix_question,
+      &does_it_climb,
+      &how_likely,
+      &is_it_poisson,
+      &what_drives,  // about rates
+      &hello,
+      &questions,
+      &quick,
+      &look_over,
+      &hold,
+      &held,
+      &release,
+      &condense,
+      &cancel,
+      &goodbye,
   };
   return all;
 }

@@ -1,9 +1,9 @@
 // engine/models/basis.hpp -- the columns a fit works in, and the way back to the design's own coefficients.
 //
-// A dense column is centred and scaled; a column that nearly depends on earlier ones is replaced by what is
-// left of it once they are taken away, worked out in double-double so that nothing is lost. Each working
-// column belongs to the coefficient of the same index; the coefficients asked for are a linear map of the
-// working ones.
+// A dense column is centred and scaled; a column that nearly depends on earlier ones is replaced by
+// what is left of it once they are taken away, worked out in double-double so that nothing is lost.
+// Each working column belongs to the coefficient of the same index; the coefficients asked for are a
+// linear map of the working ones.
 #pragma once
 
 #include <Eigen/Core>

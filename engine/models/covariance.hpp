@@ -1,8 +1,8 @@
 // engine/models/covariance.hpp -- how sure the coefficients are when the model's variance is not believed.
 //
 // Sandwich: the information's inverse around the sum of squared scores, by row or by cluster.
-// Source: White, Econometrica 48 (1980) 817; MacKinnon and White, J. Econometrics 29 (1985) 305 (HC1 to HC3);
-// Liang and Zeger, Biometrika 73 (1986) 13 (clusters).
+// Source: White, Econometrica 48 (1980) 817; MacKinnon and White, J. Econometrics 29 (1985) 305 (HC1
+// to HC3); Liang and Zeger, Biometrika 73 (1986) 13 (clusters).
 // Checked by: tests/engine/models/covariance_test.cpp, tests/reference/models/.
 #pragma once
 

@@ -1,14 +1,15 @@
 // engine/models/dependence.hpp -- columns that others explain: told apart, left out or straightened.
 //
 // A Cholesky factor in double tells that a column is nearly explained, not whether it is wholly. The
-// remainder is therefore worked out row by row in double-double. Where it is rounding in every row the column
-// is aliased; otherwise the remainder itself, scaled up, becomes the working column. Source: iterative
-// refinement after Bjorck, BIT 7 (1967) 257. Checked by: tests/engine/models/dependence_test.cpp.
+// remainder is therefore worked out row by row in double-double. Where it is rounding in every row the
+// column is aliased; otherwise the remainder itself, scaled up, becomes the working column.
+// Source: iterative refinement after Bjorck, BIT 7 (1967) 257.
+// Checked by: tests/engine/models/dependence_test.cpp.
 #pragma once
 
 #include <vector>
 
-#include "engine/models/information.hpp"
+#include "engine/models/factor.hpp"
 
 namespace countsel {
 

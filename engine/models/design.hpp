@@ -1,8 +1,8 @@
 // engine/models/design.hpp -- what a model is made of: source columns, terms, and named coefficients.
 //
-// A term says how source columns become design columns: a number as a slope, a text as levels against a
-// reference, a product of these. Levels are never expanded to columns of 0 and 1; a design only says which
-// level has which coefficient, and points at the caller's columns, which must outlive it.
+// A term says how source columns become design columns: a number as a slope, a text as levels against
+// a reference, a product of these. Levels are never expanded to columns of 0 and 1; a design only says
+// which level has which coefficient, and points at the caller's columns, which must outlive it.
 // Checked by: tests/engine/models/design_test.cpp.
 #pragma once
 

@@ -1,8 +1,8 @@
 // engine/models/double_double.hpp -- numbers of twice a double's digits, for sums that nearly cancel.
 //
-// A value is the unevaluated sum of two doubles, about 32 digits. Used where nearly dependent columns are
-// turned into well-conditioned ones; never in the inner loops. Source: Dekker, Numer. Math. 18 (1971) 224;
-// Knuth, TAOCP vol. 2, section 4.2.2.
+// A value is the unevaluated sum of two doubles, about 32 digits. Used where nearly dependent columns
+// are turned into well-conditioned ones; never in the inner loops.
+// Source: Dekker, Numer. Math. 18 (1971) 224; Knuth, TAOCP vol. 2, section 4.2.2.
 #pragma once
 
 #include <cmath>

@@ -1,8 +1,7 @@
 // engine/models/family.cpp -- the Poisson family with log link.
 //
-// log P(count | mean) = saturated(count) - unit deviance / 2, with saturated(y) = y log y - y - log y!, found
-// as
-// -(log(2 pi y) / 2 + Stirling's remainder): neither part subtracts large numbers.
+// log P(count | mean) = saturated(count) - unit deviance / 2, with saturated(y) = y log y - y - log
+// y!, found as -(log(2 pi y) / 2 + Stirling's remainder): neither part subtracts large numbers.
 // Source: Loader, Fast and accurate computation of binomial probabilities (2000).
 #include "engine/models/family.hpp"
 

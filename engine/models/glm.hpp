@@ -1,11 +1,12 @@
 // engine/models/glm.hpp -- a rate model fitted by maximum likelihood: coefficients, errors, fit.
 //
-// Newton's method over blocks of rows. Columns are centred and scaled within the loop and mapped back, near
-// dependencies are turned into well-conditioned columns in double-double arithmetic, exact ones are aliased
-// (the later column), rows that the likelihood sends to a rate of 0 are recognised and set apart.
+// Newton's method over blocks of rows. Columns are centred and scaled within the loop and mapped back,
+// near dependencies are turned into well-conditioned columns in double-double arithmetic, exact ones
+// are aliased (the later column), rows that the likelihood sends to a rate of 0 are recognised and set
+// apart.
 // Source: McCullagh and Nelder, Generalized Linear Models, 2nd ed. 1989, section 2.5; separation after
-// Correia, Guimaraes and Zylkin, arXiv:1903.01633 (2019). Checked by: tests/engine/models/glm_test.cpp,
-// tests/reference/models/.
+// Correia, Guimaraes and Zylkin, arXiv:1903.01633 (2019).
+// Checked by: tests/engine/models/glm_test.cpp, tests/reference/models/.
 #pragma once
 
 #include <Eigen/Core>

@@ -1,10 +1,11 @@
 // engine/models/kernel.hpp -- the inner loops over a block of rows, chosen for the processor at run time.
 //
-// The same source (kernel_loops.hpp) is compiled for the portable instruction set and for AVX2 with FMA. A
-// block's dense columns lie row by row (row r at z + r * stride, stride a multiple of 4), so that both the
-// cross-product and the sums by level work on whole vectors. Row counts are padded to a multiple of 4;
-// padding rows have information and score 0. Results of the two builds agree to rounding. Checked by:
-// tests/engine/models/kernel_test.cpp.
+// The same source (kernel_loops.hpp) is compiled for the portable instruction set and for AVX2 with
+// FMA. A block's dense columns lie row by row (row r at z + r * stride, stride a multiple of 4), so
+// that both the cross-product and the sums by level work on whole vectors. Row counts are padded to a
+// multiple of 4; padding rows have information and score 0. Results of the two builds agree to
+// rounding.
+// Checked by: tests/engine/models/kernel_test.cpp.
 #pragma once
 
 #include <cstddef>

@@ -1,7 +1,7 @@
 // engine/models/kernel_avx2.cpp -- the loops again, for processors with AVX2 and FMA.
 //
-// Built with -mavx2 -mfma: nothing but the loops may stand here, or another file could be given this file's
-// copy of an inline function and fail on an older processor.
+// Built with -mavx2 -mfma: nothing but the loops may stand here, or another file could be given this
+// file's copy of an inline function and fail on an older processor.
 #define KERNEL_LANES 4
 #include "engine/models/kernel_loops.hpp"
 

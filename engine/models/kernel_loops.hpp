@@ -1,10 +1,11 @@
 // engine/models/kernel_loops.hpp -- the loops of kernel.hpp, once for every instruction set.
 //
-// Included by kernel_generic.cpp and kernel_avx2.cpp alone, which say how many lanes a vector has. Vectors
-// are the compiler's own; everything is in an unnamed namespace, so that the two builds never share code.
-// Source: the exponential is reduced by multiples of log 2 (Cody and Waite 1980), its polynomial fitted at
-// Chebyshev points by tests/reference/models/kernel_polynomial.py; the logarithm's is that of fdlibm's
-// e_log.c (Sun Microsystems 1993).
+// Included by kernel_generic.cpp and kernel_avx2.cpp alone, which say how many lanes a vector has.
+// Vectors are the compiler's own; everything is in an unnamed namespace, so that the two builds never
+// share code.
+// Source: the exponential is reduced by multiples of log 2 (Cody and Waite 1980), its polynomial
+// fitted at Chebyshev points by tests/reference/models/kernel_polynomial.py; the logarithm's is that
+// of fdlibm's e_log.c (Sun Microsystems 1993).
 #pragma once
 
 #include <cstring>

@@ -1,8 +1,8 @@
 // engine/models/layout.hpp -- how a design's columns are laid out for the passes over the rows.
 //
-// Numbers become the dense columns of a block. Level columns are joined into a few groups, each with one code
-// a row: sums are kept by that code and only later added up to the levels of each term, so that a row costs
-// one addition of a vector for all the level columns of a group together.
+// Numbers become the dense columns of a block. Level columns are joined into a few groups, each with
+// one code a row: sums are kept by that code and only later added up to the levels of each term, so
+// that a row costs one addition of a vector for all the level columns of a group together.
 #pragma once
 
 #include <cstdint>

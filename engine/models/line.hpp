@@ -1,7 +1,7 @@
 // engine/models/line.hpp -- how far to go along a step.
 //
-// The predictors at the start and their change are kept, so that trying a length costs one look at each row
-// and no matrix. The score along the step falls from its start through 0 at the best length.
+// The predictors at the start and their change are kept, so that trying a length costs one look at
+// each row and no matrix. The score along the step falls from its start through 0 at the best length.
 #pragma once
 
 #include "engine/models/pass.hpp"

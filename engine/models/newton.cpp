@@ -1,7 +1,7 @@
 // engine/models/newton.cpp -- Newton's method on all rows.
 //
-// The length of a step is judged by the score along it, not by the log-likelihood: near the maximum the
-// latter's change is lost in rounding where counts are large, the score's is not.
+// The length of a step is judged by the score along it, not by the log-likelihood: near the maximum
+// the latter's change is lost in rounding where counts are large, the score's is not.
 #include "engine/models/newton.hpp"
 
 #include <algorithm>

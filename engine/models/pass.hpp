@@ -1,7 +1,7 @@
 // engine/models/pass.hpp -- one pass over the rows: sums of scores and cross-products at given coefficients.
 //
-// Rows are cut into pieces by their number alone; each piece sums its blocks in order and the pieces are
-// added in order, so that the sums do not depend on how many workers there are.
+// Rows are cut into pieces by their number alone; each piece sums its blocks in order and the pieces
+// are added in order, so that the sums do not depend on how many workers there are.
 #pragma once
 
 #include <functional>

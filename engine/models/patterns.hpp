@@ -1,7 +1,7 @@
 // engine/models/patterns.hpp -- how many different rows the terms can tell apart.
 //
-// Each row's values in the columns that the terms use are hashed to 64 bits, and different hashes counted.
-// Two patterns in a million rows share a hash with a chance of about 3e-8.
+// Each row's values in the columns that the terms use are hashed to 64 bits, and different hashes
+// counted. Two patterns in a million rows share a hash with a chance of about 3e-8.
 // Checked by: tests/engine/models/patterns_test.cpp.
 #pragma once
 

@@ -1,7 +1,7 @@
 // engine/models/start.hpp -- where Newton's method starts, without being told.
 //
-// Weighted least squares on the logarithms of the counts, each drawn half-way to the overall rate, lands near
-// however far the counts range. On many rows a spread-out sample is fitted first.
+// Weighted least squares on the logarithms of the counts, each drawn half-way to the overall rate,
+// lands near however far the counts range. On many rows a spread-out sample is fitted first.
 #pragma once
 
 #include "engine/models/dependence.hpp"

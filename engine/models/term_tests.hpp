@@ -1,10 +1,11 @@
 // engine/models/term_tests.hpp -- what each term is worth: deviance lost without it, and a joint test.
 //
-// The deviance without a term is that of the model refitted without it, all reduced models sharing their
-// passes over the rows. A term is dropped alone: one that also stands inside a cross leaves the cross in
-// place. Source: McCullagh and Nelder, Generalized Linear Models, 2nd ed. 1989, section 2.3.2 (analysis of
-// deviance); Wald, Trans. Amer. Math. Soc. 54 (1943) 426. Checked by:
-// tests/engine/models/term_tests_test.cpp.
+// The deviance without a term is that of the model refitted without it, all reduced models sharing
+// their passes over the rows. A term is dropped alone: one that also stands inside a cross leaves the
+// cross in place.
+// Source: McCullagh and Nelder, Generalized Linear Models, 2nd ed. 1989, section 2.3.2 (analysis of
+// deviance); Wald, Trans. Amer. Math. Soc. 54 (1943) 426.
+// Checked by: tests/engine/models/term_tests_test.cpp.
 #pragma once
 
 #include <Eigen/Core>

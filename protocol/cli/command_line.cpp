@@ -69,6 +69,7 @@ int run_command_line(int argc, char** argv) {
   ask->add_option("--words", asked.words, "words for sentences: events=bursts,exposure=km-years")
       ->type_name("WORD=TEXT,…");
   ask->add_option("--only", asked.only, "keep these rows; may be given several times")
+      ->allow_extra_args(false)
       ->type_name("COLUMN=VALUE");
   ask->add_flag("--no-header", asked.no_header, "the table's first row is data");
   ask->add_flag("--json", asked.json, "print the wire's reply");

@@ -6,6 +6,7 @@
 
 #include "protocol/declare/nearest.hpp"
 #include "protocol/wire/brief.hpp"
+#include "protocol/wire/large_counts.hpp"
 
 namespace countsel {
 namespace {
@@ -83,6 +84,7 @@ void check_keys(const Question& question, const Request& request) {
     if (known(of_known, column.name)) continue;
     // Columns beside the roles are welcome where a question takes them, unless the name is so near to an
     // unfilled role's that it is a slip of the pen.
+    if (question.as_sent) continue;
     if (question.takes_columns) {
       const auto slip = std::find_if(role_names.begin(), role_names.end(), [&](const std::string& role) {
         const bool filled = std::any_of(of.direct.begin(), of.direct.end(),
@@ -122,7 +124,8 @@ void set_option(const OptionSpec& spec, const Json& value, Asked& asked) {
   };
   if (spec.type == "number" || spec.type == "whole") {
     if (!value.is_number()) wrong();
-    const double number = value.get<double>();
+    const double number =
+        value.is_number_unsigned() ? beyond_largest_count(value.get<std::uint64_t>()) : value.get<double>();
     if (spec.type == "whole" && number != std::trunc(number)) refuse();
     if ((spec.above && !(number > *spec.above)) || (spec.below && !(number < *spec.below)) ||
         (spec.at_least && !(number >= *spec.at_least)) || (spec.at_most && !(number <= *spec.at_most))) {

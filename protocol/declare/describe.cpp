@@ -1,6 +1,8 @@
 // protocol/declare/describe.cpp -- the catalogue that adapters and help are made from.
 #include "protocol/declare/describe.hpp"
 
+#include <cmath>
+
 namespace countsel {
 namespace {
 
@@ -9,6 +11,14 @@ const char* style_name(Style style) {
                                           "ratio",  "log",   "p_value",  "statistic", "share",
                                           "number", "whole", "level"};
   return names[static_cast<std::size_t>(style)];
+}
+
+/// A whole number without a point.
+Json plain(Json value) {
+  if (!value.is_number_float()) return value;
+  const double number = value.get<double>();
+  if (number != std::trunc(number) || std::abs(number) > 9007199254740992.0) return value;
+  return static_cast<std::int64_t>(number);
 }
 
 }  // namespace
@@ -35,12 +45,12 @@ Json describe(const Question& question) {
   const auto defaults = question.make();
   document["options"] = Json::array();
   for (const auto& option : question.options) {
-    Json entry = {{"name", option.name}, {"type", option.type}, {"default", option.get(*defaults)}};
+    Json entry = {{"name", option.name}, {"type", option.type}, {"default", plain(option.get(*defaults))}};
     if (!option.allowed.is_null()) entry["allowed"] = option.allowed;
-    if (option.above) entry["above"] = *option.above;
-    if (option.below) entry["below"] = *option.below;
-    if (option.at_least) entry["from"] = *option.at_least;
-    if (option.at_most) entry["to"] = *option.at_most;
+    if (option.above) entry["above"] = plain(*option.above);
+    if (option.below) entry["below"] = plain(*option.below);
+    if (option.at_least) entry["from"] = plain(*option.at_least);
+    if (option.at_most) entry["to"] = plain(*option.at_most);
     if (!option.unit.empty()) entry["unit"] = option.unit;
     entry["doc"] = option.doc;
     document["options"].push_back(std::move(entry));

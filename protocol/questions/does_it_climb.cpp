@@ -1,14 +1,13 @@
 // protocol/questions/does_it_climb.cpp -- a rate over ordered steps: does it climb or fall?
-#include <algorithm>
 #include <cmath>
-#include <numeric>
 
 #include "engine/numbers/sums.hpp"
+#include "engine/rates/dispersion.hpp"
 #include "engine/rates/rate_batch.hpp"
 #include "engine/rates/trend.hpp"
-#include "engine/table/group.hpp"
 #include "protocol/declare/question.hpp"
 #include "protocol/declare/shared_options.hpp"
+#include "protocol/questions/steps.hpp"
 #include "protocol/wording/climb.hpp"
 #include "protocol/wording/rates.hpp"
 
@@ -22,51 +21,18 @@ struct DoesItClimb : RateAsked {
   Direction direction = Direction::either;
 };
 
-/// The steps in increasing order: their names, scores and sums.
-struct Steps {
-  std::vector<std::string> names;
-  std::vector<double> scores, count, exposure;
-  bool by_appearance = false;
-};
-
-Steps steps_of(const DoesItClimb& asked) {
-  const std::size_t n = asked.order.levels.size();
-  if (n < 2) {
-    throw Refusal(Code::too_few,
-                  "There is only one step, " + asked.order.levels.front() + "; a climb needs two or more.",
-                  {{asked.order.column, 0}}, "Add the rows of other steps, or ask how_often.");
-  }
-  const auto totals = add_up(asked.count.numbers, asked.exposure.numbers, asked.order.codes, n);
-  Steps steps;
-  std::vector<double> score(n);
-  std::iota(score.begin(), score.end(), 1.0);
-  steps.by_appearance = asked.order.numbers.empty();
-  for (std::size_t i = 0; i < asked.order.numbers.size(); ++i) {
-    score[static_cast<std::size_t>(asked.order.codes[i])] = asked.order.numbers[i];
-  }
-  std::vector<std::size_t> place(n);
-  std::iota(place.begin(), place.end(), std::size_t{0});
-  std::sort(place.begin(), place.end(), [&](std::size_t a, std::size_t b) { return score[a] < score[b]; });
-  for (const auto g : place) {
-    steps.names.push_back(asked.order.levels[g]);
-    steps.scores.push_back(score[g]);
-    steps.count.push_back(totals.count[g]);
-    steps.exposure.push_back(totals.exposure[g]);
-  }
-  return steps;
-}
-
 const std::vector<std::pair<std::string, TrendMethod>> limit_names = {
     {"likelihood", TrendMethod::likelihood}, {"wald", TrendMethod::wald}, {"score", TrendMethod::score}};
 
 Answer answer(const DoesItClimb& asked, Context& context) {
-  const Steps steps = steps_of(asked);
+  Answer answer;
+  const Steps steps = steps_of(asked, asked.order, answer.notes);
   const double count = sum(steps.count);
   if (!(count > 0)) {
     throw Refusal(Code::too_few, "Every count is 0; a rate without events neither climbs nor falls.",
                   {{asked.count.column, 0}}, "Ask how_often for how high the rate could still be.");
   }
-  const Trend trend = climb(steps.count, steps.exposure, steps.scores,
+  const Trend trend = climb(steps.count, steps.exposure, steps.score,
                             {.method = asked.limits,
                              .confidence = asked.confidence,
                              .side = asked.side,
@@ -84,7 +50,6 @@ Answer answer(const DoesItClimb& asked, Context& context) {
   const double ratio = std::exp(trend.log_ratio);
   const double ratio_low = std::exp(trend.low), ratio_high = std::exp(trend.high);
   const Wording wording(asked.words, asked.frame());
-  Answer answer;
   answer.figures = {{"log_ratio", trend.log_ratio},
                     {"ratio", ratio},
                     {"low", ratio_low},
@@ -101,7 +66,7 @@ Answer answer(const DoesItClimb& asked, Context& context) {
                        .p_value = trend.p_value,
                        .departure_p = trend.departure_p,
                        .level = 1 - asked.confidence,
-                       .step = steps.by_appearance ? "step" : "unit of " + asked.order.column,
+                       .step = steps.numeric ? "unit of " + asked.order.column : "step",
                        .first = steps.names.front(),
                        .last = steps.names.back(),
                        .steps = n,
@@ -110,16 +75,14 @@ Answer answer(const DoesItClimb& asked, Context& context) {
                        .side = asked.side};
   answer.say = say_climb(wording, said);
   note_climb(said, answer.notes);
-  if (steps.by_appearance) {
-    answer.notes.push_back(
-        {"equal_steps",
-         "The steps of " + asked.order.column +
-             " are texts, so they count as 1, 2, 3 and on in the order in which they appear: " +
-             listed(steps.names, 12) + "."});
-  }
+  note_dispersion(pooled_dispersion(asked.count.numbers, asked.exposure.numbers, steps.codes, n), true,
+                  wording, answer.notes, R"(what_drives with "family":"quasi-poisson" allows for it.)");
   note_small_count(count, wording, answer.notes);
   note_large_sum(count, answer.notes);
-  if (!asked.exposure.given) answer.notes.push_back(no_exposure_note(asked.rows));
+  if (!asked.exposure.given) {
+    answer.say += " No exposure was given, so each row counts as 1.";
+    answer.notes.push_back(no_exposure_note(asked.rows));
+  }
   answer.method = {{"score test for trend",
                     "Armitage, Biometrics 11 (1955) 375-386; Breslow and Day, Statistical Methods in Cancer "
                     "Research, vol. II, IARC 1987, section 3.6"},
@@ -139,7 +102,7 @@ Answer answer(const DoesItClimb& asked, Context& context) {
                               .low = low,
                               .high = high},
                              {.name = "straight climb", .role = "line", .y = fitted}}};
-  if (!steps.by_appearance) picture.x = steps.scores;
+  if (steps.numeric) picture.x = steps.score;
   answer.picture = std::move(picture);
   answer.tables = {{"steps",
                     {{"order", steps.names},
@@ -149,7 +112,7 @@ Answer answer(const DoesItClimb& asked, Context& context) {
                      {"low", std::move(low)},
                      {"high", std::move(high)},
                      {"fitted", std::move(fitted)}}}};
-  if (!steps.by_appearance) answer.tables.front().columns.front().second = steps.scores;
+  if (steps.numeric) answer.tables.front().columns.front().second = steps.score;
   return answer;
 }
 

@@ -111,7 +111,8 @@ Answer answer(const HowLikely& asked, Context&) {
                                             (past ? " to one past." : " to one expected number.")});
   }
   if (past && count < 10) {
-    answer.notes.push_back({"small_count", "The past has only " + wording.counted(count) +
+    answer.notes.push_back({"small_count", "The past has " + std::string(count > 0 ? "only " : "") +
+                                               wording.counted(count) +
                                                "; most of the range's width is doubt about the rate."});
   }
   if (asked.overdispersion == 0) {

@@ -111,8 +111,9 @@ Answer answer(const RateOrMixAsked& asked, Context&) {
     part->low *= per;
     part->high *= per;
   }
-  Answer answer{.say = say_parts(wording, one, base, sides.rate1 * per, sides.rate0 * per, scaled,
-                                 asked.stratum.column)};
+  Answer answer{.say =
+                    say_parts(wording, one, base, sides.rate1 * per, sides.rate0 * per, scaled,
+                              asked.stratum.column, asked.limits == PartMethod::gamma ? "gamma" : "normal")};
   answer.figures = {{"difference", scaled.difference.value},
                     {"rate_part", scaled.rate.value},
                     {"rate_low", scaled.rate.low},

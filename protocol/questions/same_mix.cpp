@@ -195,9 +195,10 @@ void note_unused(const SameMix& asked, std::vector<Note>& notes) {
   if (asked.way == Way::indirect && asked.weight.given) unused.emplace_back("weight");
   if (unused.empty()) return;
   notes.push_back(
-      {"unused_role", capital(listed(unused)) + (unused.size() == 1 ? " is" : " are") + " not used by " +
-                          (asked.way == Way::direct ? R"(direct standardisation; "way":"indirect" does.)"
-                                                    : R"(indirect standardisation; "way":"direct" does.)")});
+      {"unused_role",
+       capital(listed(unused)) + (unused.size() == 1 ? " plays" : " play") +
+           (asked.way == Way::direct ? R"( no part in direct standardisation, but with "way":"indirect".)"
+                                     : R"( no part in indirect standardisation, but with "way":"direct".)")});
 }
 
 Answer answer(const SameMix& asked, Context&) {
@@ -212,8 +213,9 @@ Answer answer(const SameMix& asked, Context&) {
                           (asked.reference ? "." : ", the group with the most exposure.")});
   const auto rates = direct ? directly(asked, strata, reference, answer) : indirectly(asked, strata, answer);
 
-  std::string limits = shared::name_of(asked.limits, mix_limit_names());
-  if (limits.empty()) limits = direct ? "gamma" : "exact";
+  std::string limits = asked.limits == MixLimits::unset ? (direct ? "gamma" : "exact")
+                                                        : shared::name_of(asked.limits, mix_limit_names());
+  if (limits == "dobson" || limits == "byar" || limits == "jeffreys") limits = capital(limits);
   const SaidMix said{.groups = strata.groups,
                      .rates = rates,
                      .reference = reference,

@@ -119,7 +119,9 @@ Answer answer(const WithinStrataAsked& asked, Context&) {
                         .names = names,
                         .result = result,
                         .of_ratio = of_ratio,
-                        .limits = shared::name_of(asked.limits, limit_names),
+                        .limits = asked.limits == StrataMethod::mantel_haenszel
+                                      ? "Mantel-Haenszel"
+                                      : shared::name_of(asked.limits, limit_names),
                         .side = asked.side,
                         .direction = asked.direction,
                         .per = asked.per,

@@ -77,7 +77,7 @@ Answer answer(const Condense& asked, Context& context) {
 
 extern const Question condense = service<Condense>(
     {.name = "condense",
-     .asks = "Adds up rows that have the same levels everywhere, losslessly for Poisson work.",
+     .asks = "Adds up rows of the same levels, losslessly for Poisson work.",
      .roles = {bind::role("count", Holds::count, &Condense::count, "events", true),
                bind::role("exposure", Holds::exposure, &Condense::exposure, "how much was observed")},
      .options = {bind::text("name", &Condense::name, "hold the result under this name")},

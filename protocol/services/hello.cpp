@@ -31,7 +31,7 @@ Answer answer(const Hello& asked, Context& context) {
 
 extern const Question hello = service<Hello>(
     {.name = "hello",
-     .asks = "Says who is there, its limits and its number of workers; sets the order of replies.",
+     .asks = "Says who is there and what its limits are; sets the order of replies.",
      .options = {bind::choice("order", &Hello::order, "in which order replies come",
                               {{"as_asked", Order::as_asked}, {"as_finished", Order::as_finished}})},
      .figures = {{"version", Style::text, "version of the program"},

@@ -163,13 +163,15 @@ std::string say(const Table& table, const Cast& parts, const std::vector<CellKin
                      std::to_string(columns) + (columns == 1 ? " column" : " columns");
   std::vector<std::string> played;
   const auto plays = [&](const char* part, const std::optional<std::size_t>& column) {
-    if (column) played.push_back(table.columns[*column]->name + " as " + part);
+    if (column && table.columns[*column]->name != part)
+      played.push_back(table.columns[*column]->name + " as " + part);
   };
   plays("count", parts.count);
   plays("exposure", parts.exposure);
   plays("label", parts.label);
   if (!played.empty()) text += ", taking " + listed(played);
   text += ": ";
+  if (rows == 0) return text + "there is nothing to look at.";
   if (findings.empty()) return text + "nothing stands out that should be looked at first.";
   text += findings.size() == 1 ? "1 finding. " : std::to_string(findings.size()) + " findings. ";
   return text + (findings.size() == 1 ? "" : "The first: ") + findings.front().text;
@@ -231,6 +233,10 @@ OutTable findings_table(const std::vector<SaidFinding>& findings, const Places& 
 }
 
 Answer answer(const LookOver& asked, Context& context) {
+  if (!context.table) {
+    throw Refusal(Code::missing, "look_over needs a table.", {},
+                  "Give the columns directly, or of.columns, of.range, of.held or of.file.");
+  }
   const Table& table = *context.table;
   const Places& places = *context.places;
   check_lengths(table);
@@ -247,6 +253,7 @@ Answer answer(const LookOver& asked, Context& context) {
   for (std::size_t i = 0; i < cells.size(); ++i) {
     const auto part = parts.count == i      ? ColumnPart::count
                       : parts.exposure == i ? ColumnPart::exposure
+                      : parts.label == i    ? ColumnPart::label
                                             : ColumnPart::other;
     for (auto& finding : cell_findings(table.columns[i]->name, cells[i], part, places))
       findings.push_back(std::move(finding));

@@ -14,7 +14,6 @@ constexpr std::size_t most_of_a_kind = 20;
 constexpr double largest_count = 9007199254740992.0;  // 2^53
 
 std::string cells_text(std::size_t n) { return std::to_string(n) + (n == 1 ? " cell of " : " cells of "); }
-const char* are(std::size_t n) { return n == 1 ? " is " : " are "; }
 
 class CellFindings {
  public:
@@ -24,10 +23,10 @@ class CellFindings {
     if (cells.cells == 0) return;
     std::vector<Place> where;
     for (const auto row : cells.rows) where.push_back({column_, row});
-    found_.push_back({kind, where.front(),
-                      cells_text(cells.cells) + column_ + are(cells.cells) + what + " (" +
-                          places_.list(where, cells.cells) + ").",
-                      to_do});
+    found_.push_back(
+        {kind, where.front(),
+         cells_text(cells.cells) + column_ + ": " + what + " (" + places_.list(where, cells.cells) + ").",
+         to_do});
   }
   std::vector<SaidFinding> take() { return std::move(found_); }
 
@@ -73,7 +72,8 @@ std::vector<SaidFinding> cell_findings(const std::string& column, const CellKind
   found.add("error_cell", cells.error, "an error, " + cells.error.first,
             R"(Mend the sheet, or leave such rows out with "error_cells":"skip".)");
   found.add("nested", cells.nested, "a list or an object", "Send one flat list for each column.");
-  const bool numeric = part != ColumnPart::other || cells.numeric();
+  const bool numeric = part == ColumnPart::count || part == ColumnPart::exposure ||
+                       (part == ColumnPart::other && cells.numeric());
   found.add(
       "blank", cells.blank, "blank, which is never taken as zero",
       part == ColumnPart::count
@@ -106,7 +106,7 @@ std::vector<SaidFinding> cell_findings(const std::string& column, const CellKind
   }
   if (part == ColumnPart::exposure) {
     const auto none = values_that(cells, [](double v) { return v <= 0; });
-    found.add("no_exposure", none, "an exposure of 0 or less, first " + none.first,
+    found.add("no_exposure", none, "0 or less, which no exposure is, first " + none.first,
               "Where something was counted, something was observed; a row with neither is left out.");
   }
   return found.take();

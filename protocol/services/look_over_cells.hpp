@@ -11,7 +11,7 @@
 
 namespace countsel {
 
-enum class ColumnPart { count, exposure, other };
+enum class ColumnPart { count, exposure, label, other };
 
 /// Column names that are numbers: the first row of data may have been taken for a header.
 std::vector<SaidFinding> header_findings(const Table& table);

@@ -29,11 +29,11 @@ Answer answer(const Questions& asked, Context&) {
 
 }  // namespace
 
-extern const Question questions = service<Questions>(
-    {.name = "questions",
-     .asks = "Lists the questions with their roles, options, figures, tables, methods and sources.",
-     .options = {bind::text("name", &Questions::name, "only this question")},
-     .answer = answer,
-     .examples = {R"({"ask":"questions","with":{"name":"how_often"}})"}});
+extern const Question questions =
+    service<Questions>({.name = "questions",
+                        .asks = "Lists the questions with all that they take and answer, and their sources.",
+                        .options = {bind::text("name", &Questions::name, "only this question")},
+                        .answer = answer,
+                        .examples = {R"({"ask":"questions","with":{"name":"how_often"}})"}});
 
 }  // namespace countsel

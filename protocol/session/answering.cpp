@@ -108,7 +108,14 @@ Reply answer_request(Request& request, const Question& question, std::shared_ptr
       check_room(data.rows(), data.columns.size());
       context.casting = &casting;
       context.places = &places;
-      if (!question.as_sent) take_in(question, data, casting, places, *asked, context.notes);
+      if (!question.as_sent) {
+        try {
+          take_in(question, data, casting, places, *asked, context.notes);
+        } catch (Refusal& refusal) {
+          hint_at_rates(question, casting, refusal);
+          throw;
+        }
+      }
       if (!question.service) look_quietly(question, *asked, places, context.notes);
     }
     context.work.progress.check();

@@ -2,11 +2,13 @@
 #include "protocol/session/quiet_look.hpp"
 
 #include <algorithm>
+#include <cmath>
 #include <map>
 #include <set>
 
 #include "engine/table/audit.hpp"
 #include "protocol/wording/findings.hpp"
+#include "protocol/wording/numbers.hpp"
 
 namespace countsel {
 namespace {
@@ -104,6 +106,21 @@ void look_quietly(const Question& question, Asked& asked, const Places& places, 
       note.where.push_back(say_finding(some[i], at, place).place);
     notes.push_back(std::move(note));
   }
+}
+
+void hint_at_rates(const Question& question, const Casting& casting, Refusal& refusal) {
+  if (refusal.code != Code::bad_count) return;
+  AuditTable table;
+  for (std::size_t i = 0; i < question.roles.size(); ++i) {
+    const Column* column = casting.roles[i];
+    if (!column || column->size() > most_rows_looked_at) continue;
+    if (question.roles[i].name == "count") table.counts = column->numbers;
+    if (question.roles[i].name == "exposure") table.exposures = column->numbers;
+  }
+  const auto findings = rates_for_counts(table);
+  if (findings.empty() || std::isnan(findings.front().factor)) return;
+  refusal.hint = "Times the exposure they come out whole, as rates per " +
+                 given_text(findings.front().factor) + " would: give the counts themselves.";
 }
 
 }  // namespace countsel

@@ -9,10 +9,10 @@
 
 namespace countsel {
 
-/// "11%", "99.6%", "more than 99.9%", "about 1 in 12,000", "0".
+/// "11%", "99.6%", "more than 99.9%", "about 1 in 12,000", "practically 0".
 std::string chance_text(double chance);
 
-/// What is asked of a count to come: "8 or more", "at most 2", "exactly 0", "from 2 to 5"; empty for nothing.
+/// What is asked of a count to come: "8 or more", "at most 2", "exactly 0", "2 to 5"; empty for nothing.
 struct AskedRange {
   double low, high;  ///< high +infinity: no upper end
   bool given = false;

@@ -13,9 +13,24 @@ std::string times(double factor) {
   return "only " + significant_text(factor, 2) + " times";
 }
 
-std::string quoted(const LookedAt& at, std::int64_t row) {
+/// A number of the table, without digits that say nothing.
+std::string number(double value) {
+  std::string text = significant_text(value, 4);
+  if (text.find('.') == std::string::npos || text.find('e') != std::string::npos) return text;
+  while (text.back() == '0') text.pop_back();
+  if (text.back() == '.') text.pop_back();
+  return text;
+}
+
+std::string label(const LookedAt& at, std::int64_t row) {
   const auto i = static_cast<std::size_t>(row - 1);
-  return i < at.labels.size() && !at.labels[i].empty() ? ", " + at.labels[i] + "," : "";
+  return i < at.labels.size() ? at.labels[i] : "";
+}
+
+/// ", May," in the middle of a sentence.
+std::string quoted(const LookedAt& at, std::int64_t row) {
+  const std::string text = label(at, row);
+  return text.empty() ? "" : ", " + text + ",";
 }
 
 /// The same at the end of a sentence.
@@ -47,26 +62,23 @@ SaidFinding say_finding(const Finding& finding, const LookedAt& at,
   };
   switch (finding.kind) {
     case FindingKind::exposure_jump:
-      said.text = here + quoted(at, finding.row) + " is " + significant_text(finding.value, 4) + ", " +
-                  times(finding.factor) + " the usual " + significant_text(finding.usual, 4) +
-                  " of the rows around it.";
+      said.text = here + quoted(at, finding.row) + " is " + number(finding.value) + ", " +
+                  times(finding.factor) + " the usual " + number(finding.usual) + " of the rows around it.";
       said.to_do = "Check whether it was booked in another unit, or for another stretch of time.";
       break;
     case FindingKind::exposure_shift:
       said.text = "From " + here + quoted(at, finding.row) + " on, exposures are " + times(finding.factor) +
-                  " those before (" + significant_text(finding.value, 4) + " against " +
-                  significant_text(finding.usual, 4) + ").";
+                  " those before (" + number(finding.value) + " against " + number(finding.usual) + ").";
       said.to_do = "Check whether the unit or the way of measuring changed there.";
       break;
     case FindingKind::exposure_logarithm:
-      said.text = here + " lies between " + significant_text(finding.value, 4) + " and " +
-                  significant_text(finding.usual, 4) + " and " + (finding.sure ? "looks" : "could look") +
-                  " like logarithms of exposures.";
+      said.text = here + " lies between " + number(finding.value) + " and " + number(finding.usual) +
+                  " and " + (finding.sure ? "looks" : "could look") + " like logarithms of exposures.";
       said.to_do = "Give how much was observed, not its logarithm.";
       break;
     case FindingKind::rate_for_count:
-      said.text = given_text(finding.value) + (finding.value == 1 ? " cell of " : " cells of ") + column +
-                  (finding.value == 1 ? " is" : " are") + " not whole, first " + here + "; counts are.";
+      said.text = here + " is not whole, as a count is";
+      said.text += finding.value > 1 ? "; there are " + given_text(finding.value) + " such cells." : ".";
       if (!std::isnan(finding.factor)) {
         said.text +=
             " Times the exposure they come out whole, as rates per " + given_text(finding.factor) + " would.";
@@ -81,15 +93,17 @@ SaidFinding say_finding(const Finding& finding, const LookedAt& at,
     case FindingKind::repeated_label:
       said.text = here + " has the same label as " + other() + ".";
       said.to_do =
-          "If they belong together, name the column as group and they are added up; if one was entered "
-          "twice, take it out.";
+          "If they belong together, add them up (or give the column as group where a question takes one); if "
+          "one was entered twice, take it out.";
       break;
     case FindingKind::repeated_period:
       said.text = here + " is the same period as " + other() + ".";
       said.to_do = "If one was entered twice, take it out; if both count, add them up.";
       break;
     case FindingKind::nearly_repeated:
-      said.text = here + quoted(at, finding.row) + " differs from " + other() + " in case or spaces only.";
+      said.text = here + ", \"" + label(at, finding.row) + "\", differs from \"" +
+                  label(at, finding.other_row) + "\" in row " +
+                  std::to_string(at.table_row(finding.other_row)) + " in case or spaces only.";
       said.to_do = "Write both alike if they are the same.";
       break;
   }

@@ -17,9 +17,10 @@ std::string say_differ(const Wording& wording, std::size_t groups, double count,
   const std::string p = p_said(test.p_value) + ", " + by;
   std::string text = capital(wording.counted(count)) + " in " + wording.observed(exposure) + " over " +
                      std::to_string(groups) + " groups" + wording.period() + ": ";
+  const std::string rates = "their rates " + wording.per();
   return text +
-         (test.p_value < level ? "their rates differ by more than chance alone would explain ("
-                               : "chance alone could well explain how their rates differ (") +
+         (test.p_value < level ? rates + " differ by more than chance alone would explain ("
+                               : "chance alone could well explain how " + rates + " differ (") +
          p + ").";
 }
 

@@ -11,6 +11,9 @@
 
 namespace countsel {
 
+/// "the mix of age", or "the mix" where the strata's column has no name of its own.
+std::string the_mix(const std::string& column);
+
 struct SaidMix {
   std::vector<std::string> groups;
   std::vector<AdjustedRate> rates;  ///< rates per unit of exposure; crude and adjusted are said per `per`
@@ -29,6 +32,7 @@ void note_mix(const Wording& wording, const SaidMix& said, std::vector<Note>& no
 
 /// The difference, and how much of it is rate and how much mix; parts per `per`.
 std::string say_parts(const Wording& wording, const std::string& first, const std::string& reference,
-                      double rate1, double rate0, const RateOrMix& parts, const std::string& stratum);
+                      double rate1, double rate0, const RateOrMix& parts, const std::string& stratum,
+                      const std::string& method);
 
 }  // namespace countsel

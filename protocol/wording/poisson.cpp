@@ -77,7 +77,10 @@ std::string say_poisson(const Wording& wording, const SaidPoisson& said) {
       return text + ": they vary " + significant_text(phi, 2) + " times as much" + as_much + tested +
              too_varied(wording, said);
     }
-    return text + ": they vary only " + significant_text(phi, 2) + " times as much" + as_much + tested +
+    return text +
+           (phi == 0 ? ": they do not vary at all, as Poisson counts would"
+                     : ": they vary only " + significant_text(phi, 2) + " times as much" + as_much) +
+           tested +
            " Such evenness is unusual: look for counts that are capped, smoothed, shared out or repeated. "
            "Poisson limits are on the safe side here.";
   }

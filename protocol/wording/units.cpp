@@ -137,6 +137,12 @@ void note_ranks(const std::vector<std::string>& labels, const UnitRanks& ranks, 
                      "There are too many units for limits of their ranks; the ranks alone say little."});
     return;
   }
+  if (ranks.low[first] == ranks.high[first]) {
+    notes.push_back({"ranks", labels[first] + " keeps its rank, " + given_text(ranks.rank[first]) + " of " +
+                                  given_text(static_cast<double>(labels.size())) + ", within the " + level +
+                                  " limits; others may not: read their rank's limits, not the rank."});
+    return;
+  }
   notes.push_back({"ranks", "A rank is a poor guide: " + labels[first] +
                                 " has the highest rate after shrinkage, and its rank may be anything from " +
                                 given_text(ranks.low[first]) + " to " + given_text(ranks.high[first]) +

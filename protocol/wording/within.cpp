@@ -3,6 +3,7 @@
 
 #include <cmath>
 
+#include "protocol/wording/mix.hpp"
 #include "protocol/wording/numbers.hpp"
 
 namespace countsel {
@@ -40,52 +41,49 @@ std::string say_within(const Wording& wording, const SaidWithin& said) {
   const auto& r = said.result;
   const double scale = said.of_ratio ? 1 : said.per;
   const double estimate = r.estimate * scale, low = r.low * scale, high = r.high * scale;
-  const auto text = round_limits(estimate, low, high);
+  const auto rounded = round_limits(estimate, low, high);
   const bool no_limits = std::isnan(low) || std::isnan(high);
   const std::string level = " (" + wording.level() +
                             (said.side == Side::both ? " limits, " : " one-sided limit, ") + said.limits +
                             ")";
-  std::string said_text =
-      "Compared within each " + said.column + wording.period() + ", the rate in " + said.first;
+  std::string text = "Compared within each " + said.column + wording.period() + ", the rate in " + said.first;
   if (said.of_ratio) {
-    said_text += " is ";
     const std::string that = " times that in " + said.reference;
     if (no_limits) {
-      said_text += std::isfinite(estimate)
-                       ? significant_text(estimate, 2) + that + ", without limits by this method"
-                       : "above one of 0; this method has no limits here";
+      text += (std::isfinite(estimate) ? " is " + significant_text(estimate, 2) + that
+                                       : " is above that in " + said.reference + ", which is 0") +
+              "; this method has no limits here";
     } else if (!std::isfinite(estimate) || estimate == 0) {
-      said_text += wording.limits(estimate, low, high) + that + level;
+      text += " is " + wording.limits(estimate, low, high) + that + level;
     } else {
-      said_text += text.value + that + ", " + wording.limits(estimate, low, high) + level;
+      text += " is " + rounded.value + that + ", " + wording.limits(estimate, low, high) + level;
     }
-    said_text += "; with all thrown together it is " +
-                 (std::isfinite(r.crude) ? significant_text(r.crude, 2) + " times" : "without a ratio");
+    if (std::isfinite(r.crude))
+      text += "; with all thrown together it is " + significant_text(r.crude, 3) + " times";
   } else {
-    said_text += " less that in " + said.reference + " is " + text.value + " " + wording.rate_unit();
-    if (!no_limits) said_text += ", " + signed_limits(low, high, text) + level;
-    said_text += "; with all thrown together it is " + significant_text(r.crude * scale, 2);
+    text += " less that in " + said.reference + " is " + rounded.value + " " + wording.rate_unit();
+    if (!no_limits) text += ", " + signed_limits(low, high, rounded) + level;
+    text += "; with all thrown together it is " + significant_text(r.crude * scale, 3);
   }
-  said_text += opposite(said) ? ", in the opposite direction." : ".";
+  text += opposite(said) ? ", in the opposite direction." : ".";
   const std::string p = p_said(r.p_value) + ", Mantel-Haenszel test" +
                         (said.direction == Direction::either ? "" : ", one-sided");
-  said_text += r.p_value < said.level ? " Chance alone is an unlikely explanation (" + p + ")."
-                                      : " Chance alone could well explain the difference (" + p + ").";
+  text += r.p_value < said.level ? " Chance alone is an unlikely explanation (" + p + ")."
+                                 : " Chance alone could well explain the difference (" + p + ").";
   if (r.directions_differ) {
     const Sides sides = sides_of(said, true);
-    said_text += " But the strata disagree: " + said.first + " is higher in " + listed(sides.above, 3) +
-                 " and lower in " + listed(sides.below, 3) +
-                 ", so one figure for all does not describe them.";
+    text += " But the strata disagree: " + said.first + " is higher in " + listed(sides.above, 3) +
+            " and lower in " + listed(sides.below, 3) + ", so one figure for all does not describe them.";
   }
-  return said_text;
+  return text;
 }
 
 void note_within(const SaidWithin& said, std::vector<Note>& notes) {
   const auto& r = said.result;
   if (opposite(said)) {
-    notes.push_back({"opposite_directions", "The crude comparison points the other way: the groups' mix of " +
-                                                said.column + " makes the difference. The figure within " +
-                                                said.column + " compares like with like."});
+    notes.push_back({"opposite_directions",
+                     "The crude comparison points the other way: the groups differ in " +
+                         the_mix(said.column) + ". The figure within strata compares like with like."});
   }
   if (r.homogeneity.p_value < 0.05) {
     const Sides sides = sides_of(said, false);

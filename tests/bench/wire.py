@@ -18,15 +18,18 @@ import sys
 import time
 from pathlib import Path
 
-REQUEST = json.dumps(
-    {
-        "id": 1,
-        "ask": "how_often",
-        "of": {"count": [3, 0, 5], "exposure": [1200, 800, 1500], "label": ["North", "East", "South"]},
-        "with": {"per": 1000},
-        "words": {"event": "fall", "events": "falls", "exposure": "bed-days"},
-    }
-).encode() + b"\n"
+REQUEST = (
+    json.dumps(
+        {
+            "id": 1,
+            "ask": "how_often",
+            "of": {"count": [3, 0, 5], "exposure": [1200, 800, 1500], "label": ["North", "East", "South"]},
+            "with": {"per": 1000},
+            "words": {"event": "fall", "events": "falls", "exposure": "bed-days"},
+        }
+    ).encode()
+    + b"\n"
+)
 
 
 class Process:
@@ -82,11 +85,15 @@ def main():
     start, median = min(took), statistics.median(took)
     plain = min(cold_start(echo))
     met.append(start < 0.010)
-    print(f"cold start to first reply   {1e3 * start:.2f} ms (median {1e3 * median:.2f}; echo {1e3 * plain:.2f})   goal below 10 ms")
+    print(
+        f"cold start to first reply   {1e3 * start:.2f} ms (median {1e3 * median:.2f}; echo {1e3 * plain:.2f})   goal below 10 ms"
+    )
 
     ours, theirs = round_trips([engine, echo])
     met.append(ours < 3 * theirs)
-    print(f"round trip of a how_often   {1e6 * ours:.1f} us, echo {1e6 * theirs:.1f} us: {ours / theirs:.2f} times   goal below 3 times")
+    print(
+        f"round trip of a how_often   {1e6 * ours:.1f} us, echo {1e6 * theirs:.1f} us: {ours / theirs:.2f} times   goal below 3 times"
+    )
 
     reading = subprocess.run([build / "tests/bench/bench_read"], check=False)
     met.append(reading.returncode == 0)
