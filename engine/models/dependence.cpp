@@ -141,9 +141,8 @@ Examined examine(const Layout& layout, const Basis& basis, const RowData& data, 
   };
   take_away(regress(now.factor, now.information, j));
   one.vanishes = vanishes_by_code(layout, now.sums, one.remainder);
-  // A remainder of this size is rounding even in a row where the column itself is 0.
-  const double floor =
-      1e-12 * std::fabs(one.remainder.front().second.value()) * column_size(layout, basis, j);
+  // Where the column itself is 0, what is left of other rows' rounding counts against its usual size.
+  const double floor = std::fabs(one.remainder.front().second.value()) * column_size(layout, basis, j);
   // Two corrections bring the remainder from the factor's digits to those of double-double.
   Eigen::VectorXd products;
   for (int round = 0; round < 3 && !one.vanishes; ++round) {

@@ -2,7 +2,7 @@
 //
 // Each row's values in the columns that the terms use are hashed to 64 bits, and different hashes
 // counted. Two patterns in a million rows share a hash with a chance of about 3e-8.
-// Checked by: tests/engine/models/patterns_test.cpp.
+// Checked by: tests/engine/models/design_test.cpp.
 #pragma once
 
 #include <cstddef>

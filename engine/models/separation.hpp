@@ -1,12 +1,12 @@
-// engine/models/separation.hpp -- rows whose rate the likelihood sends to 0, and the coefficients that go
-// with them.
+// engine/models/separation.hpp -- rows whose rate goes to 0, and the coefficients that go with them.
 //
-// A direction along which no row with events moves and rows without events only fall raises the likelihood
-// for ever. Such directions are sought among the combinations that vanish on all rows with events: an exact
-// search, no judging of a fit that drifts. Nonnegative least squares gives a direction or proves that there
-// is none (a theorem of the alternative). Source: Correia, Guimaraes and Zylkin, arXiv:1903.01633 (2019), for
-// the conditions; Lawson and Hanson, Solving Least Squares Problems (1974), chapter 23; Stiemke, Math. Ann.
-// 76 (1915) 340. Checked by: tests/engine/models/separation_test.cpp.
+// A direction along which no row with events moves and rows without events only fall raises the
+// likelihood for ever. Such directions are sought among the combinations that vanish on all rows with
+// events: an exact search, no judging of a fit that drifts. Nonnegative least squares gives a direction
+// or proves that there is none (a theorem of the alternative).
+// Source: Correia, Guimaraes and Zylkin, arXiv:1903.01633 (2019), for the conditions; Lawson and Hanson,
+// Solving Least Squares Problems (1974), chapter 23; Stiemke, Math. Ann. 76 (1915) 340.
+// Checked by: tests/engine/models/separation_test.cpp.
 #pragma once
 
 #include <vector>

@@ -346,18 +346,15 @@ void fill_role(ReadColumn& read, const std::vector<std::uint32_t>& kept, std::sh
   role.column = column.name;
   role.source = std::move(source);
   if (holds_numbers(read.holds) || (read.holds == Holds::order && column.all_numbers())) {
-    if (kept.empty() && read.numbers.empty()) {
-      role.numbers = column.numbers;
-      return;
-    }
-    if (kept.empty()) {
-      role.own_numbers = std::move(read.numbers);
-    } else {
+    if (!kept.empty()) {
       const auto values = read.values();
       role.own_numbers.reserve(kept.size());
       for (const auto row : kept) role.own_numbers.push_back(values[row]);
+    } else if (!read.numbers.empty()) {
+      role.own_numbers = std::move(read.numbers);
     }
-    role.numbers = role.own_numbers;
+    role.numbers = kept.empty() && role.own_numbers.empty() ? std::span<const double>(column.numbers)
+                                                            : std::span<const double>(role.own_numbers);
     if (read.holds != Holds::order) return;
   }
   if (column.all_texts() && kept.empty()) {

@@ -163,7 +163,7 @@ Answer answer(const RateOrMixAsked& asked, Context&) {
 // Not rate_or_mix, which is the engine's function.
 extern const Question rate_or_mix_question = question<RateOrMixAsked>(
     {.name = "rate_or_mix",
-     .asks = "Two periods or places: how much of the difference is the rate, how much the mix?",
+     .asks = "Two periods or places: is the difference the rate or the mix, and how much?",
      .roles = {shared::count(), shared::exposure(true),
                bind::role("stratum", Holds::levels, &RateOrMixAsked::stratum,
                           "the mix: age band, case type, kind of pipe", true),

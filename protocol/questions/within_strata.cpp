@@ -224,7 +224,7 @@ std::vector<Source> sources() {
 // Not within_strata, which is the engine's function.
 extern const Question within_strata_question = question<WithinStrataAsked>(
     {.name = "within_strata",
-     .asks = "Two groups compared inside each stratum: by how much do they differ, like with like?",
+     .asks = "Two groups, like with like in each stratum: by how much do they differ?",
      .roles = {shared::count(), shared::exposure(true),
                bind::role("group", Holds::levels, &WithinStrataAsked::group, "two values", true),
                bind::role("stratum", Holds::levels, &WithinStrataAsked::stratum,

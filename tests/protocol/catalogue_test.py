@@ -119,6 +119,8 @@ class Catalogue(WireTest):
                 self.assertEqual(len({len(cells) for cells in columns.values()}), 1, name)
                 seen |= {(name, column) for column in columns}
             seen |= set(there) | set(answer["tables"])
+        if question["name"] == "do_they_differ":
+            figures = set(figures) - {"p_error"}  # only where there are too many outcomes to look at all
         self.assertEqual(set(figures) - seen, set())
         self.assertEqual(set(tables) - seen, set())
         self.assertEqual({(name, column) for name in tables for column in tables[name]} - seen, set())

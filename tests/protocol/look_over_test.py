@@ -70,7 +70,7 @@ class LookOver(WireTest):
     def test_logarithms_and_rates(self):
         logs = {"count": [3, 4, 50, 6, 3, 2, 4], "exposure": [6.9, 7.0, 9.5, 7.1, 7.2, 6.8, 7.4]}
         self.assertEqual(self.kinds(logs), [("exposure_logarithm", "exposure", None)])
-        rates = {"count": [2.5, 4.0, 1.25, 8.0], "exposure": [1200, 1000, 800, 500]}
+        rates = {"count": [2.5, 3.75, 1.25, 7.5], "exposure": [1200, 800, 800, 400]}
         found, _ = self.findings(rates)
         self.assertEqual(found[0]["kind"], "rate_for_count")
         self.assertIn("per 1,000", found[0]["text"])
