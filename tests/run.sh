@@ -1,16 +1,18 @@
 #!/bin/sh
 # tests/run.sh -- installs what is missing, builds and runs every test; what CI calls.
 #
-# sh tests/run.sh            everything: also under the sanitizers, and a build by the other compiler
+# sh tests/run.sh            format, the release build, every test
+# sh tests/run.sh --all      before these, a build by the other compiler and the tests under the sanitizers
 # sh tests/run.sh --quick    format, an incremental build, the tests not labelled slow
 set -eu
 cd "$(dirname "$0")/.."
 
 case ${1:-} in
-  '') quick= ;;
-  --quick) quick=yes ;;
+  '') quick= all= ;;
+  --quick) quick=yes all= ;;
+  --all) quick= all=yes ;;
   *)
-    echo "usage: sh tests/run.sh [--quick]" >&2
+    echo "usage: sh tests/run.sh [--quick | --all]" >&2
     exit 2
     ;;
 esac
@@ -39,10 +41,12 @@ if [ -n "$quick" ]; then
   exec ctest --test-dir build/release --output-on-failure --label-exclude slow
 fi
 
-build clang
-build debug
-step "test debug: address and undefined-behaviour sanitizers"
-ctest --test-dir build/debug --output-on-failure --label-exclude slow
+if [ -n "$all" ]; then
+  build clang
+  build debug
+  step "test debug: address and undefined-behaviour sanitizers"
+  ctest --test-dir build/debug --output-on-failure --label-exclude slow
+fi
 build release
 step "test release"
 exec ctest --test-dir build/release --output-on-failure
