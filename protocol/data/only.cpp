@@ -85,8 +85,9 @@ std::vector<Only> read_only(const Table& table, const Json& rest) {
   for (const auto& [name, wanted] : given->items()) {
     Only only{&find_column(table, name, " for of.only"), {}};
     std::unordered_map<std::string, bool> seen;
-    const auto add = [&](const Json& value) {
-      std::string text = value.is_null() ? "" : bind::level_of("of.only." + name, value);
+    // clang 14 captures no structured binding.
+    const auto add = [&, option = "of.only." + name](const Json& value) {
+      std::string text = value.is_null() ? "" : bind::level_of(option, value);
       if (seen.try_emplace(text, true).second) only.values.push_back(std::move(text));
     };
     if (wanted.is_array()) {

@@ -81,6 +81,9 @@ bool LineSource::more_of_line() {
 }
 
 void LineSource::skip_line() {
+  // What is passed over is not wanted, nor the room that what was recorded took.
+  recording_ = false;
+  record_ = std::string();
   while (inside_) {
     const auto bytes = static_cast<std::size_t>(filled_ - position_);
     const auto* newline = static_cast<const char*>(std::memchr(position_, '\n', bytes));
