@@ -1,10 +1,10 @@
 #!/usr/bin/env python3
-# tests/reference/rates/copy_cases_b.py -- copies gathered check values that the wire is held to.
+# tests/reference/rates/copy_cases.py -- copies gathered check values that the wire is held to.
 #
-#   ./copy_cases_b.py FOLDER     with FOLDER the one that holds A_count_intervals.json and its like
+#   ./copy_cases.py FOLDER     with FOLDER the one that holds A_count_intervals.json and its like
 #
-# Makes cases_one_rate.json, cases_two_rates.json and cases_spread.json: published values with their source and
-# tolerance, and recomputed ones to about 12 digits with what computed them.
+# Makes cases_one_rate.json and its like, one file for each topic: published values with their source and tolerance,
+# and recomputed ones to about 12 digits with what computed them.
 import csv
 import json
 import re
@@ -17,6 +17,9 @@ CHOICES = {
     "cases_one_rate.json": [("A_count_intervals.json", r"A-(garwood|15-400-(exact|score|wald|midp)|gehrels|midp|sir-byar)"),
                             ("H_prediction.json", r"H-hahn-meeker-ci")],
     "cases_two_rates.json": [("B_standardise_compare.json", r"B-(gu|ratio|cond|etest|rothman)")],
+    "cases_expected.json": [("A_count_intervals.json", r"A-smr"), ("B_standardise_compare.json", r"B-boice")],
+    "cases_strata.json": [("B_standardise_compare.json", r"B-(dsr|mh|indirect)")],
+    "cases_trend.json": [("I_trend_change.json", r"I-(coal-trend|doctors)")],
     "cases_spread.json": [("C_dispersion.json", r"C-"), ("G_shrinkage_multiplicity.json", r"G-(funnel|eb-claims)"),
                           ("H_prediction.json", r"H-hahn-meeker-pred")],
 }
