@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <map>
 #include <optional>
 #include <unordered_map>
 
@@ -95,6 +96,33 @@ class Recognising {
   std::vector<const Role*> sets_;
 };
 
+/// The counts behind rates alone: those of each group by the other sets' levels, so that groups keep their
+/// sums.
+std::vector<CountList> counts_behind(const Question& question, Asked& asked) {
+  const Role* counts = count_role(question, asked);
+  std::map<std::string, std::map<std::string, std::vector<std::uint32_t>>> groups;
+  for (std::uint32_t i = 0; counts && i < counts->numbers.size(); ++i) {
+    std::string group, cell;
+    for (const auto& spec : question.roles) {
+      const Role& role = spec.at(asked);
+      if (!role.given || spec.holds != Holds::levels) continue;
+      (spec.name == "group" ? group : cell) += std::to_string(role.codes[i]) + ' ';
+    }
+    groups[group][cell].push_back(i);
+  }
+  std::vector<CountList> lists;
+  for (const auto& [group, cells] : groups) {
+    lists.push_back({CountList::nowhere, CountList::nowhere, {}, {}});
+    for (const auto& [cell, rows] : cells) {
+      double sum = 0;
+      for (const auto row : rows) sum += counts->numbers[row];
+      lists.back().counts.push_back(sum);
+      lists.back().rows.push_back(rows);
+    }
+  }
+  return lists;
+}
+
 }  // namespace
 
 Role* count_role(const Question& question, Asked& asked) {
@@ -117,6 +145,10 @@ Style style_of(const Question& question, const std::string& table, const std::st
 
 CountsShown counts_shown(const Question& question, Asked& asked, const Answer& answer) {
   CountsShown shown;
+  if (!has_count_columns(question.tables)) {
+    shown.lists = counts_behind(question, asked);
+    return shown;
+  }
   const Recognising recognising(question, asked);
   for (std::size_t t = 0; t < answer.tables.size(); ++t) {
     const OutTable& table = answer.tables[t];

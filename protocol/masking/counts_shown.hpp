@@ -14,7 +14,8 @@ namespace countsel {
 
 /// A column of counts in an answer's table; `rows[i]` are the data's rows that its i-th count adds up.
 struct CountList {
-  std::size_t table, column;
+  static constexpr std::size_t nowhere = static_cast<std::size_t>(-1);
+  std::size_t table, column;  ///< `nowhere`: the answer rests on these counts without showing them
   std::vector<double> counts;
   std::vector<std::vector<std::uint32_t>> rows;
 };
@@ -29,6 +30,7 @@ Role* count_role(const Question& question, Asked& asked);
 /// The declared style of a column; `number` where it is not declared.
 Style style_of(const Question& question, const std::string& table, const std::string& column);
 
+/// Where an answer has no column of counts: the counts of each group by the levels of the other roles.
 CountsShown counts_shown(const Question& question, Asked& asked, const Answer& answer);
 
 }  // namespace countsel

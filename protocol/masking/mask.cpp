@@ -127,6 +127,7 @@ Tried try_out(const Answer& answer, const std::vector<MaskedCounts>& all, double
 void withhold_rows(const Question& question, const Answer& answer, const std::vector<MaskedCounts>& all,
                    Withheld& withheld) {
   for (const auto& one : all) {
+    if (one.list.table == CountList::nowhere) continue;
     const OutTable& table = answer.tables[one.list.table];
     for (std::size_t row = 0; row < one.masked.counts.size(); ++row) {
       if (one.masked.counts[row] == Shown::plain) continue;
@@ -237,7 +238,7 @@ bool mask_counts(const Question& question, Asked& asked, const Context& context,
   std::optional<Tried> tried;
   if (known) {
     if (nothing_small(masked_counts(shown, threshold, false))) {
-      answer.notes.push_back({"nothing_masked", "No count shown is under " + k + "."});
+      answer.notes.push_back({"nothing_masked", "No count is under " + k + "."});
       return false;
     }
     tried = withheld_by_trial(question, asked, context, answer, shown, threshold, counts);
@@ -248,12 +249,13 @@ bool mask_counts(const Question& question, Asked& asked, const Context& context,
     counts = withhold_small(question, answer, threshold, tried->withheld);
   }
   take_out(question, tried->withheld, mark, answer);
-  const std::string are =
-      counts == 1 ? "1 count is" : given_text(static_cast<double>(counts)) + " counts are";
-  answer.say +=
-      answer.say.empty()
-          ? "What was asked rests on counts under " + k + "; " + are + " withheld (\"" + mark + "\")."
-          : " To protect counts under " + k + ", " + are + " withheld (\"" + mark + "\").";
+  const bool unseen = !shown.lists.empty() && shown.lists.front().table == CountList::nowhere;
+  const std::string are = unseen        ? "what rests on them is"
+                          : counts == 1 ? "1 count is"
+                                        : given_text(static_cast<double>(counts)) + " counts are";
+  const std::string withheld = are + " withheld" + (unseen ? "." : " (\"" + mark + "\").");
+  answer.say += answer.say.empty() ? "What was asked rests on counts under " + k + "; " + withheld
+                                   : " To protect counts under " + k + ", " + withheld;
   answer.notes.push_back(masking_note(mark, threshold));
   return true;
 }

@@ -174,7 +174,7 @@ extern const Question rate_or_mix_question = question<RateOrMixAsked>(
                              "the group that is taken off the other; by default the second to appear"),
                  bind::choice("limits", &RateOrMixAsked::limits, "how the parts' limits are found",
                               {{"gamma", PartMethod::gamma}, {"normal", PartMethod::normal}}),
-                 shared::side(&RateOrMixAsked::side)},
+                 shared::side(&RateOrMixAsked::side), mask_option()},
      .figures = {{"difference", Style::rate, "crude rate of the group less the reference's, per `per`"},
                  {"rate_part", Style::rate, "what the rates within strata make of it", "rate_low",
                   "rate_high"},

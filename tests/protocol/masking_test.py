@@ -280,6 +280,18 @@ class Groups(Attack):
             room=2,
         )
 
+    def test_rate_or_mix(self):
+        # No count is shown, yet the parts follow from them: with small ones the parts go, and what is left agrees
+        # with other counts.
+        of = {"count": [2, 20, 31, 9], "exposure": [12, 17, 20, 30], "group": ["a", "a", "b", "b"],
+              "stratum": ["x", "y", "x", "y"]}
+        request = {"ask": "rate_or_mix", "of": of}
+        masked = ask_all([dict(request, **{"with": {"mask_below": K}})])[0]["answer"]
+        self.assertTrue(all(value is None for value in masked["figures"].values()), masked)
+        others = [dict(of, count=[small, 22 - small, 31, 9]) for small in range(K)]
+        replies = ask_all([dict(request, of=other) for other in others])
+        self.assertGreater(sum(agrees(masked, reply["answer"]) for reply in replies), 1)
+
     def test_does_it_climb(self):
         if "does_it_climb" not in questions():
             self.skipTest("not there")
