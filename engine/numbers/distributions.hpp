@@ -4,7 +4,7 @@
 // one. One policy: double without promotion to long double, errors as values (NaN or infinity).
 // Each is right to 12 digits for shapes and counts to 1e9 and tails to 1e-300, which Boost alone is not.
 // Source: Boost.Math 1.74 special functions; engine/numbers/large_shapes.hpp; identities as noted.
-// Checked by: tests/engine/numbers/distributions_test.cpp, tests/reference/distributions.tsv.
+// Checked by: tests/engine/numbers/distributions_test.cpp, tests/reference/numbers/distributions.tsv.
 #pragma once
 
 #include "engine/numbers/share.hpp"

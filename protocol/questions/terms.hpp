@@ -1,6 +1,6 @@
 // protocol/questions/terms.hpp -- the terms of a model, from the wire to the engine's design.
 //
-// Checked by: tests/protocol/questions/terms_test.cpp and the transcripts of the model questions.
+// Checked by: tests/protocol/transcripts/what_drives.txt.
 #pragma once
 
 #include <string>

@@ -1,6 +1,6 @@
 // protocol/wording/chances.hpp -- chances and likely ranges as they are said.
 //
-// Checked by: tests/protocol/wording/chances_test.cpp.
+// Checked by: tests/protocol/rates_cases_b_test.py.
 #pragma once
 
 #include <string>
